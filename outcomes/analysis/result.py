@@ -1,0 +1,71 @@
+"""What every result is: a tidy table, the method that made it, its denominators and its cautions."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, field
+
+import pandas as pd
+
+# Columns in this order; a result holds those that apply, and always the same ones for one function.
+COLUMNS = (
+    "group",
+    "cause",
+    "state",
+    "time",
+    "estimate",
+    "std_error",
+    "lower",
+    "upper",
+    "at_risk",
+    "events",
+    "censored",
+    "exposure",
+    "reason",
+)
+
+
+@dataclass(frozen=True)
+class Method:
+    """How a number was made, in words that let a reader repeat it."""
+
+    estimator: str
+    variance: str = ""
+    interval: str = ""
+    level: float = 0.95
+    ties: str = ""
+    time_unit: str = ""
+    citations: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class Caution:
+    """A caution that goes with a number. `code` is one of terms.CAUTIONS (FU, OPEN, EV-LOW …)."""
+
+    code: str
+    text: str
+
+
+@dataclass(frozen=True)
+class Result:
+    """table: one row per group × time (× cause or state); missing numbers are pandas NA with a code in
+    `reason`, never NaN in an object meant for print. counts: named denominators. notes: cautions."""
+
+    table: pd.DataFrame
+    method: Method
+    counts: Mapping[str, int] = field(default_factory=dict)
+    notes: tuple[Caution, ...] = ()
+
+
+def tidy(rows: Sequence[Mapping[str, object]], columns: Sequence[str]) -> pd.DataFrame:
+    """A frame with exactly these columns and nullable types, whether or not there are rows.
+
+    Floats become Float64, counts (at_risk, events, censored) Int64 or, if weighted, Float64, words string.
+    """
+    frame = pd.DataFrame.from_records(list(rows), columns=list(columns))
+    for name in columns:
+        if name in ("group", "cause", "state", "reason"):
+            frame[name] = frame[name].astype("string")
+        else:
+            frame[name] = frame[name].astype("Float64")
+    return frame
