@@ -1,4 +1,4 @@
-"""Which scores there are: ours, and a site's own tables in the same form, which replace ours or add to them."""
+"""Which scores there are: ours, and a site's own tables in the same form, in place of ours or beside them."""
 
 from __future__ import annotations
 
@@ -17,7 +17,7 @@ from outcomes.scores.table import parse_score
 
 
 class Catalogue:
-    """Score tables by key. files: (key, TOML text, 'ours' or 'site'), as `resources.score_files` lists them."""
+    """Score tables by key. files: (key, TOML text, 'ours' or 'site'), as `resources.score_files` has them."""
 
     def __init__(self, files: Iterable[tuple[str, str, str]]) -> None:
         self._texts = {key: (text, whose) for key, text, whose in files}
@@ -76,8 +76,8 @@ def implemented_score(score: str | Score, tables: Catalogue | None = None) -> Sc
         "SCORE.NOT-IMPLEMENTED",
         f"{found.name} is not implemented: point table not verified",
         where=f"missing: {'; '.join(found.sheet['missing'])}",
-        todo=f"read it in: {found.sheet['where_printed'] or found.sheet['citation']['text']}; then put a table "
-        f"{found.key}.toml in the folder of your own score tables",
+        todo=f"read it in: {found.sheet['where_printed'] or found.sheet['citation']['text']}; then put "
+        f"a table {found.key}.toml in the folder of your own score tables",
     )
 
 

@@ -55,7 +55,7 @@ _NO_CODES: Codes = np.empty(0, dtype=np.int8)
 
 
 class Source:
-    """A frame with the caller's declarations: where each field is, in which unit, and what holds for all rows."""
+    """A frame with the caller's declarations: where each field is, in which unit, what holds for all rows."""
 
     def __init__(
         self,
@@ -123,6 +123,9 @@ def read_columns(score: Score, source: Source) -> dict[str, Column]:
     """
     source.check(score)
     out = {entry.key: _read(entry, source) for entry in score.inputs}
+    for entry in score.inputs:
+        if entry.zero_when_true:
+            out[entry.key] = _empty_as_zero(out[entry.key], out[entry.zero_when_true])
     if all(bool(column.null.all()) for column in out.values()) and len(source.frame):
         raise UsageError(
             "SCORE.NO-INPUT",
@@ -148,6 +151,15 @@ def _read(entry: Input, source: Source) -> Column:
         )
         return _completed(_column(series, entry, source, False, field.name), entry, source)
     return _completed(_column(source.frame[name], entry, source, mapped, name), entry, source)
+
+
+def _empty_as_zero(column: Column, said: Column) -> Column:
+    """Empty means 'none given' only in rows that say their list is complete."""
+    none_given = column.null & (said.code == 0)
+    if not none_given.any():
+        return column
+    values = np.where(none_given, 0.0, column.low)
+    return Column(column.name, column.field, values, values, _NO_CODES, column.null & ~none_given)
 
 
 def _stretched(one: Column, n: int) -> Column:
@@ -188,7 +200,7 @@ def _floats(series: pd.Series, name: str) -> Floats:
 
 
 def _truth(series: pd.Series, name: str) -> Codes:
-    """1 place of True (0), place of False (1), −1 unknown; words such as 'yes' are refused, not guessed."""
+    """0 is True and 1 False (places in `words`), −1 unknown; words such as 'yes' are refused, not guessed."""
     kind = series.dtype
     if pd.api.types.is_bool_dtype(kind) or pd.api.types.is_numeric_dtype(kind):
         values = series.to_numpy(dtype=np.float64, na_value=np.nan)
@@ -197,10 +209,13 @@ def _truth(series: pd.Series, name: str) -> Codes:
         if seen not in ("empty", "boolean", "integer", "floating"):
             raise InputRefused("score_value_kind", f"the column {name} must hold true/false, it holds {seen}")
         values = series.astype("Float64").to_numpy(dtype=np.float64, na_value=np.nan)
+    no = values == 0.0
     unknown = np.isnan(values)
-    if not bool(np.all(unknown | (values == 0.0) | (values == 1.0))):
+    if not bool((no | unknown | (values == 1.0)).all()):
         raise InputRefused("score_value_kind", f"the column {name} must hold true/false or 1/0 only")
-    return np.where(unknown, -1, np.where(values == 1.0, 0, 1)).astype(np.int8)
+    code: Codes = no.astype(np.int8)
+    code[unknown] = -1
+    return code
 
 
 def _choice(series: pd.Series, field: Field, name: str) -> Codes:
@@ -214,7 +229,8 @@ def _choice(series: pd.Series, field: Field, name: str) -> Codes:
                 "score_value_kind", f"the column {name} may hold only: {', '.join(field.choices)}, unknown"
             )
         table[n] = place[word]
-    return table[codes]
+    out: Codes = table[codes]
+    return out
 
 
 def _converted(values: Floats, field: Field, unit: str, source: Source) -> Floats:

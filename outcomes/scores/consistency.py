@@ -4,11 +4,13 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
 from itertools import pairwise, product
+from typing import Any
 
-from outcomes.scores.model import Interval, Item, Row, Score, ScoreClass, applies
+from outcomes.scores.model import Interval, Item, Row, Score, ScoreClass, applies, under
 from outcomes.scores.reading import Problems
 
 MOST_INPUTS = 30
+MOST_STEPS = 12
 
 
 def check_score(score: Score, problems: Problems) -> None:
@@ -25,10 +27,15 @@ def check_score(score: Score, problems: Problems) -> None:
         return
     for item in score.items:
         _check_item(score, item, problems)
+    _check_variants(score, problems)
     _check_input_use(score, problems)
     _check_range(score, problems)
     _check_classes(score, problems)
     _check_vectors(score, problems)
+
+
+def _named(parts: Iterable[Any]) -> list[tuple[str, tuple[str, ...]]]:
+    return [(part.key, part.only_with) for part in parts]
 
 
 def _check_names(score: Score, problems: Problems) -> None:
@@ -36,15 +43,16 @@ def _check_names(score: Score, problems: Problems) -> None:
         problems.add("KEY", "a key is a lower-case word", "key")
     if len(score.inputs) > MOST_INPUTS:
         problems.add("INPUT", f"at most {MOST_INPUTS} inputs", "input")
-    for kind, keys in (
-        ("input", [(x.key, x.only_with) for x in score.inputs]),
-        ("item", [(x.key, x.only_with) for x in score.items]),
-        ("class", [(x.key, x.only_with) for x in score.classes]),
-        ("population", [(x.key, x.only_with) for x in score.population]),
+    parts: tuple[tuple[str, list[tuple[str, tuple[str, ...]]]], ...] = (
+        ("input", _named(score.inputs)),
+        ("item", _named(score.items)),
+        ("class", _named(score.classes)),
+        ("population", _named(score.population)),
         ("convention", [(x.key, ()) for x in score.conventions]),
         ("vector", [(x.key, ()) for x in score.vectors]),
-    ):
-        for entry in {entry for entry in keys if keys.count(entry) > 1}:
+    )
+    for kind, keys in parts:
+        for entry in sorted({entry for entry in keys if keys.count(entry) > 1}):
             problems.add("TWICE", f"{entry[0]} is given twice", kind)
 
 
@@ -75,10 +83,34 @@ def _combinations(score: Score, only_with: Iterable[tuple[str, ...]]) -> Iterato
         yield {c.key: option for c, option in zip(involved, choice, strict=True)}
 
 
+def _check_variants(score: Score, problems: Problems) -> None:
+    """Under every choice: no key twice, and every input that is read is there."""
+    parts = [x.only_with for x in (*score.inputs, *score.items, *score.population)]
+    for chosen in _combinations(score, parts):
+        active = under(score, {**defaults(score), **chosen})
+        there = {x.key for x in active.inputs}
+        read = {key for item in active.items for key in item.inputs}
+        read |= {c.input for item in active.items for gate in item.not_applicable for c in gate.when}
+        read |= {c.input for rule in active.population for c in rule.any_of}
+        read |= {x.zero_when_true for x in active.inputs} - {""}
+        choice = ", ".join(f"{key}={value}" for key, value in chosen.items())
+        for key in sorted(read - there):
+            problems.add("INPUT", f"{key} is read but not an input under {choice or 'the defaults'}", "input")
+        for kind, keys in (
+            ("item", [x.key for x in active.items]),
+            ("input", [x.key for x in active.inputs]),
+            ("population", [x.key for x in active.population]),
+        ):
+            for key in sorted({key for key in keys if keys.count(key) > 1}):
+                problems.add("TWICE", f"{key} applies twice under {choice or 'the defaults'}", kind)
+
+
 def _check_item(score: Score, item: Item, problems: Problems) -> None:
     where = f"item {item.key}"
     if item.kind == "per_unit":
         return
+    if len({row.points for row in item.rows}) > MOST_STEPS:
+        problems.add("POINTS", f"at most {MOST_STEPS} different points in one item", where)
     parts = [item.only_with, *(r.only_with for r in item.rows), *(g.only_with for g in item.not_applicable)]
     for chosen in _combinations(score, parts):
         if not applies(item.only_with, chosen):
@@ -124,6 +156,11 @@ def _check_input_use(score: Score, problems: Problems) -> None:
     used = {key for item in score.items for key in item.inputs}
     used |= {c.input for item in score.items for g in item.not_applicable for c in g.when}
     used |= {c.input for rule in score.population for c in rule.any_of}
+    used |= {entry.zero_when_true for entry in score.inputs}
+    kinds = {entry.key: entry.field.kind for entry in score.inputs}
+    for name in {entry.zero_when_true for entry in score.inputs} - {""}:
+        if kinds.get(name) != "yes_no":
+            problems.add("INPUT", f"zero_when_true names {name}, which is no yes/no input", "input")
     for entry in score.inputs:
         if entry.key not in used:
             problems.add("INPUT", f"the input {entry.key} is used by nothing", "input")

@@ -1,4 +1,4 @@
-"""Whether a run belongs to the population a score was made for: yes, no (rule named) or unknown (field named)."""
+"""Whether a run belongs to the population a score was made for: yes, no (rule named), unknown (field named)."""
 
 from __future__ import annotations
 
@@ -18,14 +18,14 @@ LEVELS = (YES, NO, UNKNOWN)
 
 @dataclass(frozen=True)
 class Verdict:
-    """code: place in LEVELS per row. pattern: 0 for yes, else the reason as a number that `reason` can read."""
+    """code: place in LEVELS per row. pattern: 0 for yes, else the reason as a number `reason` can read."""
 
     code: npt.NDArray[np.int8]
     pattern: npt.NDArray[np.int64]
 
 
 def judge(score: Score, columns: Mapping[str, Column], n: int) -> Verdict:
-    """Three-valued: the first rule that surely fails makes 'no'; a rule that cannot be judged makes 'unknown'."""
+    """The first rule that surely fails makes 'no'; else a rule that cannot be judged makes 'unknown'."""
     failed = np.zeros(n, dtype=np.int64)
     doubt = np.zeros(n, dtype=np.int64)
     for place, rule in enumerate(score.population):
@@ -46,7 +46,8 @@ def reason(score: Score, pattern: int) -> str:
     if pattern < 0:
         return f"outside the population: {score.population[-pattern - 1].text} does not hold"
     rules = [rule for place, rule in enumerate(score.population) if pattern >> place & 1]
-    return f"cannot be judged: {', '.join(dict.fromkeys(f for rule in rules for f in _fields(score, rule)))} unknown"
+    names = dict.fromkeys(name for rule in rules for name in _fields(score, rule))
+    return f"cannot be judged: {', '.join(names)} unknown"
 
 
 def _fields(score: Score, rule: Rule) -> list[str]:

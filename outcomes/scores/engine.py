@@ -175,12 +175,18 @@ def _add_items(
                 _mark(sums.missing[rows], gap & column.inexact, bits[key] * half)
         _mark(sums.absent[rows], absent, bits[item.inputs[0]])
     for key in dict.fromkeys(key for item in score.items for key in item.inputs):
-        _mark(sums.used[rows], ~columns[key].null, bits[key])
+        sums.used[rows] += bits[key]
+        _mark(sums.used[rows], columns[key].null, -bits[key])
 
 
 def _mark(pattern: Ints, where: npt.NDArray[np.bool_], bit: int) -> None:
-    if where.any():
-        np.bitwise_or(pattern, bit, out=pattern, where=where)
+    """Add a bit once where asked; a negative bit takes it away again."""
+    if not where.any():
+        return
+    if bit > 0:
+        pattern |= np.multiply(where, bit, dtype=np.int64)
+    else:
+        pattern += np.multiply(where, bit, dtype=np.int64)
 
 
 def _listed(pattern: int, names: list[str]) -> str:
@@ -196,7 +202,8 @@ def _words(pattern: Ints, spell: Callable[[int], str]) -> pd.Categorical:
     codes, uniques = pd.factorize(pattern)
     words = [spell(int(p)) for p in uniques]
     levels = sorted(set(words))
-    table = np.array([levels.index(word) for word in words], dtype=np.int32)
+    place = {word: n for n, word in enumerate(levels)}
+    table = np.array([place[word] for word in words], dtype=np.int32)
     return pd.Categorical.from_codes(table[codes] if len(table) else codes, levels)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
+from functools import lru_cache
 
 import numpy as np
 
@@ -68,18 +69,32 @@ def any_of(tests: Iterable[Condition], columns: Columns) -> tuple[Mask, Mask]:
 
 
 def decide(rows: tuple[Row, ...], otherwise: float | None, columns: Columns, n: int) -> tuple[Floats, Floats]:
-    """Lowest and highest points that the rows leave possible: the first row that holds decides."""
-    low, high = np.full(n, np.inf), np.full(n, -np.inf)
+    """Lowest and highest points that the rows leave possible: the first row that holds decides.
+
+    The points still possible become the bits of a small number per run; a table turns that into both ends.
+    """
+    given = (*(row.points for row in rows), *(() if otherwise is None else (otherwise,)))
+    points = tuple(dict.fromkeys(given))
+    pattern = np.zeros(n, dtype=np.int32)
     undecided = np.ones(n, dtype=bool)
     for row in rows:
         sure, possible = all_of(row.when, columns)
-        may = undecided & possible
-        np.minimum(low, row.points, out=low, where=may)
-        np.maximum(high, row.points, out=high, where=may)
+        pattern |= np.multiply(possible & undecided, 1 << points.index(row.points), dtype=np.int32)
         undecided &= ~sure
     if otherwise is not None:
-        np.minimum(low, otherwise, out=low, where=undecided)
-        np.maximum(high, otherwise, out=high, where=undecided)
+        pattern |= np.multiply(undecided, 1 << points.index(otherwise), dtype=np.int32)
+    low, high = _ends(points)
+    return low[pattern], high[pattern]
+
+
+@lru_cache(maxsize=512)
+def _ends(points: tuple[float, ...]) -> tuple[Floats, Floats]:
+    """Lowest and highest of every subset of `points`, by the bits of its number; nothing left is NaN."""
+    low, high = np.full(1 << len(points), np.nan), np.full(1 << len(points), np.nan)
+    for place, value in enumerate(points):
+        bit = 1 << place
+        low[bit : 2 * bit] = np.fmin(low[:bit], value)
+        high[bit : 2 * bit] = np.fmax(high[:bit], value)
     return low, high
 
 

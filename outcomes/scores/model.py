@@ -46,7 +46,7 @@ class Interval:
 
 @dataclass(frozen=True)
 class Condition:
-    """One input inside an interval (in canonical unit; `printed` keeps the table's own), or one of some words."""
+    """One input inside an interval (canonical unit; `printed` keeps the table's own), or one of some words."""
 
     input: str
     interval: Interval | None = None
@@ -76,13 +76,17 @@ class NotApplicable:
 
 @dataclass(frozen=True)
 class Input:
-    """Which quantity, taken when, and which of several values (worst = max, min, last …)."""
+    """Which quantity, taken when, and which of several values (worst = max, min, last …).
+
+    zero_when_true: a yes/no input that, where true, says that an empty value means none was given (0).
+    """
 
     key: str
     field: Field
     window: str
     worst: str
     note: str = ""
+    zero_when_true: str = ""
     only_with: tuple[str, ...] = ()
 
 
@@ -148,7 +152,7 @@ class Convention:
 
 @dataclass(frozen=True)
 class Vector:
-    """A worked example: inputs in canonical units, points by item or group, total, class, probability."""
+    """A worked example: inputs (canonical unless `units` says otherwise), points by item or group, results."""
 
     key: str
     inputs: Mapping[str, Any]
@@ -157,6 +161,7 @@ class Vector:
     class_key: str | None
     probability: float | None
     options: Mapping[str, str]
+    units: Mapping[str, str]
 
 
 @dataclass(frozen=True)

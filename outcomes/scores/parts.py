@@ -51,6 +51,7 @@ def read_input(node: Node) -> Input:
         window=node.word("window", WINDOWS),
         worst=node.word("worst", WORST),
         note=node.text("note", ""),
+        zero_when_true=node.text("zero_when_true", ""),
         only_with=node.words("only_with"),
     )
     node.finish()
@@ -278,6 +279,7 @@ def read_vector(node: Node) -> Vector:
         class_key=node.text("class", "") or None,
         probability=node.optional_number("probability"),
         options={str(k): str(v) for k, v in node.mapping("options").items()},
+        units={str(k): str(v) for k, v in node.mapping("units").items()},
     )
     node.finish()
     return out
