@@ -1,0 +1,87 @@
+"""After an interrupted import: the store decides, link file and calendar file follow it, leftovers are swept."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from pathlib import Path
+
+from outcomes.errors import StoreProblem
+from outcomes.store.connect import connect, open_for_reading
+from outcomes.store.files import BEFORE, drop_before, sweep
+from outcomes.store.ledger import batch_number, verify
+from outcomes.store.linkfile import CALENDAR, LINK, generation_at, require_unchanged
+
+
+@dataclass(frozen=True)
+class Places:
+    """Where the three files are. They lie apart on purpose if the programme wants it so."""
+
+    store: Path
+    link: Path
+    calendar: Path
+
+    @staticmethod
+    def beside(store: Path, link: Path | None = None, calendar: Path | None = None) -> Places:
+        return Places(store, link or Path(str(store) + ".link"), calendar or Path(str(store) + ".calendar"))
+
+
+def current_batch(places: Places) -> int:
+    """Batch of the store, verified against its ledger; 0 if there is no store."""
+    if not places.store.exists() and not places.store.is_symlink():
+        return 0
+    con = open_for_reading(places.store)
+    try:
+        verify(con)
+        return batch_number(con)
+    finally:
+        con.close()
+
+
+def recover(places: Places) -> int:
+    """Bring the three files back together after a kill; only under the lock. Returns the store's batch.
+
+    Raises StoreProblem WAL.FOUND if a write-ahead log lies beside the store: this program never leaves one, so something
+    else has written to it; it is put aside, never replayed.
+    """
+    wal = Path(str(places.store) + ".wal")
+    if wal.exists():
+        aside = Path(str(places.store) + ".wal.quarantine")
+        wal.replace(aside)
+        raise StoreProblem(
+            "STORE.LOG-FOUND",
+            "a write-ahead log lay beside the store; another program has written to it",
+            todo="it was put aside with the ending .quarantine; run the command again to use the store as its ledger knows it",
+        )
+    sweep(places.store)
+    batch = current_batch(places)
+    for path, code in ((places.link, LINK), (places.calendar, CALENDAR)):
+        right = generation_at(path, code, batch)
+        if right is not None and right != path:
+            right.replace(path)
+        elif right is None and path.exists():
+            path.unlink()  # written by a first import that never reached its store
+        drop_before(path)
+    Path(str(places.store) + BEFORE).unlink(missing_ok=True)
+    if batch:
+        _require_companions(places)
+    return batch
+
+
+def _require_companions(places: Places) -> None:
+    """The link file must be the one that the last import wrote; so must the calendar file, if it is there at all."""
+    con = connect(places.store, read_only=True)
+    try:
+        row = con.execute("select link_sha256, calendar_sha256 from ledger.batch order by batch_no desc limit 1").fetchone()
+    finally:
+        con.close()
+    if row is None:
+        return
+    if not places.link.exists():
+        raise StoreProblem(
+            "LINK.ABSENT",
+            "the link file of this store is not there",
+            todo="restore it; without it known people would get new surrogates, so nothing was imported",
+        )
+    require_unchanged(places.link, LINK, row[0])
+    if row[1] and places.calendar.exists():
+        require_unchanged(places.calendar, CALENDAR, row[1])

@@ -1,0 +1,8 @@
+-- effect: run
+-- column: hospital_outcome.is_alive_at_discharge
+-- needs: 
+-- of: hospital_outcome
+-- rule: who died on support did not leave hospital alive
+select o.run_key, o.sheet_no, o.line
+from candidate.hospital_outcome o join candidate.support_end e using (run_key)
+where e.end_kind = 'death' and o.is_alive_at_discharge
