@@ -8,17 +8,13 @@ from difflib import get_close_matches
 from typing import Any
 
 import numpy as np
-import numpy.typing as npt
 import pandas as pd
 
 from outcomes.errors import InputRefused, UsageError
 from outcomes.scores.fields import FIELDS, INTERVAL_COLUMNS, Field
 from outcomes.scores.model import Input, Score
 from outcomes.scores.units import factor
-
-Floats = npt.NDArray[np.float64]
-Codes = npt.NDArray[np.int8]
-Mask = npt.NDArray[np.bool_]
+from outcomes.scores.values import Codes, Floats, Mask, check_limits, choice, floats, truth
 
 # Quantities that follow from two others when they are not recorded themselves.
 _DERIVED = {"bmi_kg_m2": ("weight_kg", "height_cm"), "pao2_fio2_mmhg": ("pao2_mmhg", "fio2")}
@@ -122,16 +118,11 @@ def read_columns(score: Score, source: Source) -> dict[str, Column]:
     Raises UsageError (unit, name) or InputRefused (kind of values, hard limits) before anything is computed.
     """
     source.check(score)
+    _check_any_input(score, source)
     out = {entry.key: _read(entry, source) for entry in score.inputs}
     for entry in score.inputs:
         if entry.zero_when_true:
             out[entry.key] = _empty_as_zero(out[entry.key], out[entry.zero_when_true])
-    if all(bool(column.null.all()) for column in out.values()) and len(source.frame):
-        raise UsageError(
-            "SCORE.NO-INPUT",
-            f"the frame holds no input of {score.name}",
-            todo=f"give columns for: {', '.join(x.field.name for x in score.inputs)}",
-        )
     return out
 
 
@@ -151,6 +142,22 @@ def _read(entry: Input, source: Source) -> Column:
         )
         return _completed(_column(series, entry, source, False, field.name), entry, source)
     return _completed(_column(source.frame[name], entry, source, mapped, name), entry, source)
+
+
+def _check_any_input(score: Score, source: Source) -> None:
+    """A frame that holds none of the items is a wrong frame; a frame with empty columns is not."""
+    keys = {key for item in score.items for key in item.inputs}
+    wanted = [entry for entry in score.inputs if entry.key in keys]
+    names = {name for x in wanted for name in (x.key, x.field.name)}
+    names |= {part for x in wanted for part in _DERIVED.get(x.field.name, ())}
+    names |= {part for x in wanted for part in INTERVAL_COLUMNS.get(x.field.name, ())}
+    there = names & {*source.declared, *source.columns, *(str(name) for name in source.frame.columns)}
+    if not there and all(source.place(entry)[0] is None for entry in wanted):
+        raise UsageError(
+            "SCORE.NO-INPUT",
+            f"the frame holds no input of {score.name}",
+            todo=f"give columns for: {', '.join(x.field.name for x in wanted)}",
+        )
 
 
 def _empty_as_zero(column: Column, said: Column) -> Column:
@@ -176,61 +183,15 @@ def _stretched(one: Column, n: int) -> Column:
 def _column(series: pd.Series, entry: Input, source: Source, mapped: bool, name: str) -> Column:
     field = entry.field
     if not field.is_numeric:
-        code = _truth(series, name) if field.kind == "yes_no" else _choice(series, field, name)
+        code = truth(series, name) if field.kind == "yes_no" else choice(series, field, name)
         return Column(name, field, _NO_FLOATS, _NO_FLOATS, code, code < 0)
-    values = _floats(series, name)
+    values = floats(series, name)
     unit = source.unit(entry, mapped, name) if not series.isna().all() or mapped else field.unit
     values = _converted(values, field, unit, source)
-    _check_limits(values, field, name)
+    check_limits(values, field, name)
     if field.kind == "completed_years":
         values = np.floor(values)
     return Column(name, field, values, values, _NO_CODES, np.isnan(values))
-
-
-def _floats(series: pd.Series, name: str) -> Floats:
-    kind = series.dtype
-    if pd.api.types.is_bool_dtype(kind) or not pd.api.types.is_numeric_dtype(kind):
-        seen = pd.api.types.infer_dtype(series, skipna=True)
-        if seen not in ("empty", "integer", "floating", "mixed-integer-float", "decimal"):
-            raise InputRefused(
-                "score_value_kind", f"the column {name} must hold numbers, it holds {seen} values"
-            )
-        series = pd.to_numeric(series)
-    return np.asarray(series.to_numpy(dtype=np.float64, na_value=np.nan), dtype=np.float64)
-
-
-def _truth(series: pd.Series, name: str) -> Codes:
-    """0 is True and 1 False (places in `words`), −1 unknown; words such as 'yes' are refused, not guessed."""
-    kind = series.dtype
-    if pd.api.types.is_bool_dtype(kind) or pd.api.types.is_numeric_dtype(kind):
-        values = series.to_numpy(dtype=np.float64, na_value=np.nan)
-    else:
-        seen = pd.api.types.infer_dtype(series, skipna=True)
-        if seen not in ("empty", "boolean", "integer", "floating"):
-            raise InputRefused("score_value_kind", f"the column {name} must hold true/false, it holds {seen}")
-        values = series.astype("Float64").to_numpy(dtype=np.float64, na_value=np.nan)
-    no = values == 0.0
-    unknown = np.isnan(values)
-    if not bool((no | unknown | (values == 1.0)).all()):
-        raise InputRefused("score_value_kind", f"the column {name} must hold true/false or 1/0 only")
-    code: Codes = no.astype(np.int8)
-    code[unknown] = -1
-    return code
-
-
-def _choice(series: pd.Series, field: Field, name: str) -> Codes:
-    """Place of each word in the field's list; 'unknown' and missing are −1, any other word is refused."""
-    codes, uniques = pd.factorize(series.astype(object) if series.dtype != "category" else series)
-    place = {word: n for n, word in enumerate(field.choices)} | {"unknown": -1}
-    table = np.full(len(uniques) + 1, -1, dtype=np.int8)
-    for n, word in enumerate(uniques):
-        if word not in place:
-            raise InputRefused(
-                "score_value_kind", f"the column {name} may hold only: {', '.join(field.choices)}, unknown"
-            )
-        table[n] = place[word]
-    out: Codes = table[codes]
-    return out
 
 
 def _converted(values: Floats, field: Field, unit: str, source: Source) -> Floats:
@@ -247,20 +208,6 @@ def _converted(values: Floats, field: Field, unit: str, source: Source) -> Float
     return np.asarray(np.where(values == 0.0, 0.0, values * times / weight.low), dtype=np.float64)
 
 
-def _check_limits(values: Floats, field: Field, name: str) -> None:
-    assert field.low is not None and field.high is not None
-    slack = 1e-9 * max(abs(field.low), abs(field.high))
-    outside = (values < field.low - slack) | (values > field.high + slack)
-    if bool(outside.any()):
-        raise InputRefused(
-            "score_hard_limit",
-            f"the column {name} has {int(outside.sum())} value(s) outside {field.low:g} to {field.high:g} "
-            f"{field.unit}: an impossible value or a wrong unit",
-        )
-    if field.kind == "whole" and bool((values[~np.isnan(values)] % 1.0 != 0.0).any()):
-        raise InputRefused("score_value_kind", f"the column {name} must hold whole numbers")
-
-
 def _completed(column: Column, entry: Input, source: Source) -> Column:
     """Where the value itself is unknown: two recorded components, else an interval, else unknown."""
     if not column.null.any():
@@ -271,9 +218,9 @@ def _completed(column: Column, entry: Input, source: Source) -> Column:
     names = [source.columns.get(n, n) for n in pair] if pair else []
     if not names or not all(n in source.frame.columns for n in names):
         return column
-    low, high = (np.floor(_floats(source.frame[n], n)) for n in names)
+    low, high = (np.floor(floats(source.frame[n], n)) for n in names)
     for values, n in zip((low, high), names, strict=True):
-        _check_limits(values, entry.field, n)
+        check_limits(values, entry.field, n)
     usable = column.null & ~np.isnan(low) & ~np.isnan(high)
     if bool((low[usable] > high[usable]).any()):
         raise InputRefused("score_interval", f"{names[0]} lies above {names[1]} in some rows")
@@ -297,5 +244,5 @@ def _from_components(column: Column, entry: Input, source: Source) -> Column:
     value = first.low / metres**2 if entry.field.name == "bmi_kg_m2" else first.low / metres
     values = np.where(column.null, value, column.low)
     name = column.name if not column.null.all() else f"{first.name} and {second.name}"
-    _check_limits(values, entry.field, name)
+    check_limits(values, entry.field, name)
     return Column(name, entry.field, values, values, _NO_CODES, np.isnan(values))

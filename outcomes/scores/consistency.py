@@ -85,7 +85,8 @@ def _combinations(score: Score, only_with: Iterable[tuple[str, ...]]) -> Iterato
 
 def _check_variants(score: Score, problems: Problems) -> None:
     """Under every choice: no key twice, and every input that is read is there."""
-    parts = [x.only_with for x in (*score.inputs, *score.items, *score.population)]
+    parts = [x.only_with for x in score.inputs]
+    parts += [x.only_with for x in score.items] + [x.only_with for x in score.population]
     for chosen in _combinations(score, parts):
         active = under(score, {**defaults(score), **chosen})
         there = {x.key for x in active.inputs}

@@ -1,4 +1,4 @@
-"""Whether a run belongs to the population a score was made for: yes, no (rule named), unknown (field named)."""
+"""Whether a run belongs to the population a score was made for: yes, no (with rule), unknown (with field)."""
 
 from __future__ import annotations
 

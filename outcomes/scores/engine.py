@@ -15,10 +15,11 @@ import numpy.typing as npt
 import pandas as pd
 
 from outcomes.scores.catalogue import Catalogue, chosen_options, implemented_score
-from outcomes.scores.columns import Column, Floats, Source, read_columns
+from outcomes.scores.columns import Column, Source, read_columns
 from outcomes.scores.eligibility import LEVELS, judge, reason
 from outcomes.scores.logic import item_points
 from outcomes.scores.model import UNCHECKED, Score, under
+from outcomes.scores.values import Floats
 
 CHUNK = 1 << 15
 Ints = npt.NDArray[np.int64]
@@ -120,23 +121,26 @@ class _Totals:
     missing: Ints
     absent: Ints
     used: Ints
+    reasons: Ints
+    eligible: npt.NDArray[np.int8]
 
 
 def _answer(score: Score, columns: Mapping[str, Column], index: pd.Index) -> pd.DataFrame:
     n = len(index)
     keys = [entry.key for entry in score.inputs]
-    sums = _Totals(
-        np.full(n, score.constant), np.full(n, score.constant), *(np.zeros(n, np.int64) for _ in range(3))
-    )
+    totals = (np.full(n, score.constant), np.full(n, score.constant))
+    sums = _Totals(*totals, *(np.zeros(n, np.int64) for _ in range(4)), np.zeros(n, np.int8))
     for start in range(0, n, CHUNK):
         rows = slice(start, min(start + CHUNK, n))
-        _add_items(score, {key: column.part(rows) for key, column in columns.items()}, keys, sums, rows)
-    verdict = judge(score, columns, n)
+        part = {key: column.part(rows) for key, column in columns.items()}
+        _add_items(score, part, keys, sums, rows)
+        verdict = judge(score, part, rows.stop - rows.start)
+        sums.eligible[rows], sums.reasons[rows] = verdict.code, verdict.pattern
     settled = sums.low == sums.high
     class_codes = _class_codes(score, sums)
     names = [columns[key].name for key in keys]
     fields = [entry.field.name for entry in score.inputs]
-    usable = settled & (verdict.code == 0) & (class_codes >= 0)
+    usable = settled & (sums.eligible == 0) & (class_codes >= 0)
     predicted, evidence = _predictions(score, class_codes, usable)
     data = {
         "total": _numbers(score, np.where(settled, sums.low, np.nan)),
@@ -145,8 +149,8 @@ def _answer(score: Score, columns: Mapping[str, Column], index: pd.Index) -> pd.
         "missing": _words(sums.missing, lambda p: _listed(p, fields)),
         "not_applicable": _words(sums.absent, lambda p: _listed(p, fields)),
         "class": pd.Categorical.from_codes(class_codes, [c.key for c in score.classes], ordered=True),
-        "eligible": pd.Categorical.from_codes(verdict.code, list(LEVELS)),
-        "eligibility_reason": _words(verdict.pattern, lambda p: reason(score, p)),
+        "eligible": pd.Categorical.from_codes(sums.eligible, list(LEVELS)),
+        "eligibility_reason": _words(sums.reasons, lambda p: reason(score, p)),
         "predicted": predicted,
         "predicted_outcome": _constant(score.outcome if score.classes else "", n),
         "predicted_horizon": _constant(score.horizon if score.classes else "", n),

@@ -14,6 +14,8 @@ import numpy as np
 import numpy.typing as npt
 import pandas as pd
 from sklearn.base import BaseEstimator, ClassifierMixin, TransformerMixin
+from sklearn.utils import assert_all_finite, check_consistent_length, column_or_1d
+from sklearn.utils.multiclass import check_classification_targets
 from sklearn.utils.validation import check_is_fitted
 
 from outcomes.errors import InputRefused, UsageError
@@ -30,7 +32,7 @@ COMPLEMENT = {"death": "survival", "survival": "death"}
 class _ScorePart(BaseEstimator):  # type: ignore[misc]
     """What both faces share: the parameters that `compute` takes, and the look at the columns."""
 
-    score: str
+    key: str
     columns: Mapping[str, str] | None
     units: Mapping[str, str] | None
     options: Mapping[str, str] | None
@@ -48,7 +50,7 @@ class _ScorePart(BaseEstimator):  # type: ignore[misc]
 
     def _learn_names(self, X: Any) -> Score:
         frame = self._frame(X)
-        whole = implemented_score(self.score, self.tables)
+        whole = implemented_score(self.key, self.tables)
         active = under(whole, chosen_options(whole, dict(self.options or {})))
         source = Source(frame, self.columns, self.units, self.declared)
         read_columns(active, source)
@@ -66,7 +68,7 @@ class _ScorePart(BaseEstimator):  # type: ignore[misc]
         if lacking:
             raise UsageError("SCORE.COLUMN", f"columns seen when fitting are missing: {', '.join(lacking)}")
         return compute(
-            self.score,
+            self.key,
             frame,
             columns=self.columns,
             units=self.units,
@@ -87,7 +89,7 @@ class _ScorePart(BaseEstimator):  # type: ignore[misc]
 class ScoreTotal(TransformerMixin, _ScorePart):  # type: ignore[misc]
     """Transformer: frame of runs → one column an output ('total', 'total_low', 'total_high', 'predicted').
 
-    An unsettled total is NaN, never zero. Parameters as in `engine.compute`.
+    An unsettled total is NaN, never zero. key: the score; the other parameters as in `engine.compute`.
 
     >>> runs = pd.DataFrame({"age_years": [64], "call_to_arrival_min": [25.0], "ph": [7.1],
     ...                      "rhythm_shockable_at_arrival": [True]})
@@ -97,7 +99,7 @@ class ScoreTotal(TransformerMixin, _ScorePart):  # type: ignore[misc]
 
     def __init__(
         self,
-        score: str = "save",
+        key: str = "save",
         *,
         outputs: Sequence[str] = ("total",),
         columns: Mapping[str, str] | None = None,
@@ -106,7 +108,7 @@ class ScoreTotal(TransformerMixin, _ScorePart):  # type: ignore[misc]
         declared: Mapping[str, Any] | None = None,
         tables: Catalogue | None = None,
     ) -> None:
-        self.score = score
+        self.key = key
         self.outputs = outputs
         self.columns = columns
         self.units = units
@@ -131,20 +133,21 @@ class ScoreTotal(TransformerMixin, _ScorePart):  # type: ignore[misc]
     def get_feature_names_out(self, input_features: Any = None) -> npt.NDArray[np.object_]:
         """`<score>_<output>` for each output."""
         check_is_fitted(self)
-        return np.asarray([f"{self.score}_{name}" for name in self.outputs], dtype=object)
+        return np.asarray([f"{self.key}_{name}" for name in self.outputs], dtype=object)
 
 
 class ScoreRisk(ClassifierMixin, _ScorePart):  # type: ignore[misc]
     """Classifier: the printed probability of the run's class; nothing is fitted.
 
-    event: 'death', 'survival' or 'favourable_neurology'; the second label of y means that the event happened.
+    key: the score. event: 'death', 'survival' or 'favourable_neurology'; the second label of y means that it
+    happened.
     A table with second-hand or remembered lines needs a `DeclaredCheck` in `declared_checks`.
     when_none: 'refuse' raises if a run has no prediction (not eligible, not complete), 'nan' gives NaN.
     """
 
     def __init__(
         self,
-        score: str = "save",
+        key: str = "save",
         *,
         event: str = "death",
         declared_checks: Sequence[DeclaredCheck] = (),
@@ -155,7 +158,7 @@ class ScoreRisk(ClassifierMixin, _ScorePart):  # type: ignore[misc]
         declared: Mapping[str, Any] | None = None,
         tables: Catalogue | None = None,
     ) -> None:
-        self.score = score
+        self.key = key
         self.event = event
         self.declared_checks = declared_checks
         self.when_none = when_none
@@ -181,11 +184,21 @@ class ScoreRisk(ClassifierMixin, _ScorePart):  # type: ignore[misc]
             )
         if self.event not in (whole.event, COMPLEMENT.get(whole.event)):
             raise UsageError("SCORE.OUTCOME", f"{whole.name} predicts {whole.outcome}, not {self.event}")
-        self.classes_ = np.unique(np.asarray(y))
+        labels = column_or_1d(y, warn=True)
+        check_consistent_length(X, labels)
+        check_classification_targets(labels)
+        assert_all_finite(labels)
+        self.classes_ = np.unique(labels)
         if len(self.classes_) != 2:
             raise InputRefused("score_labels", "y must hold exactly two labels")
         self.is_complement_ = self.event != whole.event
         return self
+
+    def __sklearn_tags__(self) -> Any:
+        tags = super().__sklearn_tags__()
+        tags.classifier_tags.multi_class = False
+        tags.classifier_tags.poor_score = True  # it does not learn, so it cannot fit any data one likes
+        return tags
 
     def predict_proba(self, X: Any) -> npt.NDArray[np.float64]:
         """Array (runs × 2), columns in the order of `classes_`."""

@@ -7,8 +7,9 @@ from functools import lru_cache
 
 import numpy as np
 
-from outcomes.scores.columns import Column, Floats, Mask
+from outcomes.scores.columns import Column
 from outcomes.scores.model import TOLERANCE, Condition, Interval, Item, Row
+from outcomes.scores.values import Floats, Mask
 
 Columns = Mapping[str, Column]
 

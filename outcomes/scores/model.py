@@ -46,7 +46,7 @@ class Interval:
 
 @dataclass(frozen=True)
 class Condition:
-    """One input inside an interval (canonical unit; `printed` keeps the table's own), or one of some words."""
+    """One input inside an interval (canonical unit; `printed` has the table's own), or one of some words."""
 
     input: str
     interval: Interval | None = None
@@ -152,7 +152,7 @@ class Convention:
 
 @dataclass(frozen=True)
 class Vector:
-    """A worked example: inputs (canonical unless `units` says otherwise), points by item or group, results."""
+    """A worked example: inputs (canonical unless `units` says otherwise), points by item or group."""
 
     key: str
     inputs: Mapping[str, Any]

@@ -114,7 +114,7 @@ def describe_score(key: str | Score, tables: Catalogue | None = None) -> ScoreSh
 def input_table(score: str | Score, tables: Catalogue | None = None) -> pd.DataFrame:
     """What a score reads, one row an input, columns INPUT_COLUMNS.
 
-    low and high are the hard limits in `unit`; window says when the value is taken and worst which of several.
+    low and high are the hard limits in `unit`; window says when the value is taken, worst which of several.
     """
     rows = [
         {

@@ -1,7 +1,7 @@
 """Units a declared column may have, and the exact factor to the canonical unit.
 
 canonical = received × factor. Factors for mass to substance concentration follow the molar masses creatinine
-113.12, bilirubin 584.67, lactate 90.078, glucose 180.156, urea 60.056 g/mol (28.014 of it nitrogen); pressures
+113.12, bilirubin 584.67, lactate 90.078, glucose 180.156, urea 60.056 g/mol (nitrogen 28.014); pressures
 follow UCUM (m[Hg] = 133.3220 kPa, 98.0665 Pa/cm[H2O]); pounds and inches by definition. Nothing converts a
 prothrombin time or an INR into an activity: they are different quantities.
 """
