@@ -18,10 +18,10 @@ select
 from record.support_run r
 join record.person p using (person_key)
 left join record.indication i on i.run_key = r.run_key and i.is_primary
-left join record.pre_support_state s using (run_key)
-left join record.cannulation c using (run_key)
-left join record.support_end e using (run_key)
-left join vocabulary.end_kind k using (end_kind)
-left join record.hospital_outcome o using (run_key)
+left join record.pre_support_state s on s.run_key = r.run_key
+left join record.cannulation c on c.run_key = r.run_key
+left join record.support_end e on e.run_key = r.run_key
+left join vocabulary.end_kind k on k.end_kind = e.end_kind
+left join record.hospital_outcome o on o.run_key = r.run_key
 left join record.neuro_outcome n on n.run_key = r.run_key and n.scale = 'cpc'
 order by r.run_key

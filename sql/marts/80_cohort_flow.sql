@@ -6,7 +6,7 @@ with runs as (
 ), attempts as (
   select source_key, count(*) as n from record.cannulation_attempt group by source_key
 )
-select s.source_key, stage_no, stage, n::integer as n
+select s.source_key, v.stage_no, v.stage, v.n::integer as n
 from record.source s
 left join runs r using (source_key) left join aside a using (source_key) left join attempts t using (source_key)
 cross join lateral (values
@@ -16,4 +16,4 @@ cross join lateral (values
   (4, 'persons in the store', coalesce(r.n_persons, 0)),
   (5, 'attempts that never reached flow', case when s.attempts = 'included' then coalesce(t.n, 0) end)
 ) as v(stage_no, stage, n)
-order by s.source_key, stage_no
+order by s.source_key, v.stage_no
