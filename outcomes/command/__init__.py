@@ -1,0 +1,1 @@
+"""One file a verb of the command line: `arguments(parser)` and `run(args)`; found by listing, loaded only when called."""
