@@ -124,12 +124,18 @@ class _Totals:
     reasons: Ints
     eligible: npt.NDArray[np.int8]
 
+    @classmethod
+    def start(cls, constant: float, n: int) -> _Totals:
+        """Every total at the constant of the score, nothing marked."""
+        missing, absent, used, reasons = (np.zeros(n, np.int64) for _ in range(4))
+        low, high = np.full(n, constant), np.full(n, constant)
+        return cls(low, high, missing, absent, used, reasons, np.zeros(n, np.int8))
+
 
 def _answer(score: Score, columns: Mapping[str, Column], index: pd.Index) -> pd.DataFrame:
     n = len(index)
     keys = [entry.key for entry in score.inputs]
-    totals = (np.full(n, score.constant), np.full(n, score.constant))
-    sums = _Totals(*totals, *(np.zeros(n, np.int64) for _ in range(4)), np.zeros(n, np.int8))
+    sums = _Totals.start(score.constant, n)
     for start in range(0, n, CHUNK):
         rows = slice(start, min(start + CHUNK, n))
         part = {key: column.part(rows) for key, column in columns.items()}
