@@ -17,12 +17,14 @@ from matplotlib.lines import Line2D
 
 from outcomes.figures.palette import GRID, INK, SOFT, WHITE
 from outcomes.figures.svg import clean_svg
+from outcomes.tables.format import number, time_point
 
 __all__ = [
     "Axes",
     "Line2D",
     "Sheet",
     "axes",
+    "label_end",
     "percent_axis",
     "saved",
     "sheet",
@@ -94,7 +96,7 @@ def percent_axis(ax: Axes, top: float = 1.0) -> None:
     step = 0.2 if top > 0.5 else 0.1
     ticks = [step * i for i in range(int(top / step + 1.0001))]
     ax.set_ylim(0, top)
-    ax.set_yticks(ticks, [f"{tick:.0%}" for tick in ticks])
+    ax.set_yticks(ticks, [f"{number(tick * 100, 0)}%" for tick in ticks])
     ax.grid(axis="y")
     ax.set_axisbelow(True)
 
@@ -102,7 +104,7 @@ def percent_axis(ax: Axes, top: float = 1.0) -> None:
 def time_axis(ax: Axes, ticks: Sequence[float], label: str, end: float) -> None:
     """A horizontal axis from 0 to `end`."""
     ax.set_xlim(0, end)
-    ax.set_xticks(ticks, [f"{tick:g}" for tick in ticks])
+    ax.set_xticks(ticks, [time_point(tick) for tick in ticks])
     ax.set_xlabel(label, fontsize=SMALL)
 
 
@@ -123,6 +125,12 @@ def spread(places: Sequence[float], least: float, low: float, high: float) -> li
         out[i] = min(out[i], ceiling)
         ceiling = out[i] - least
     return out
+
+
+def label_end(ax: Axes, end: tuple[float, float], place: tuple[float, float], text: str) -> None:
+    """A label beside a line or area, tied to its end by a hair line."""
+    hair = {"arrowstyle": "-", "color": SOFT, "linewidth": 0.6, "shrinkA": 1, "shrinkB": 1}
+    ax.annotate(text, end, place, va="center", fontsize=SMALL, annotation_clip=False, arrowprops=hair)
 
 
 def saved(paper: Sheet, key: str, title: str, description: str) -> str:

@@ -11,6 +11,7 @@ from matplotlib.ticker import FixedLocator, NullLocator
 from outcomes.figures import canvas
 from outcomes.figures.drawing import Drawing
 from outcomes.figures.palette import BLACK, BLUE, EDGE
+from outcomes.tables.format import number
 
 LEFT, RIGHT, ROW, BELOW, ABOVE = 170.0, 20.0, 20.0, 40.0, 22.0
 _COLUMNS = ["group", "estimate", "lower", "upper"]
@@ -70,7 +71,7 @@ def _scale(ax: Axes, drawing: Drawing, frame: pd.DataFrame) -> None:
         ticks = _log_ticks(low, high)
         ax.xaxis.set_major_locator(FixedLocator(ticks))
         ax.xaxis.set_minor_locator(NullLocator())
-        ax.set_xticks(ticks, [f"{tick:g}" for tick in ticks])
+        ax.set_xticks(ticks, [number(tick, max(0, -math.floor(math.log10(tick)))) for tick in ticks])
         ax.set_xlim(low, high)
         return
     low = drawing.options.get("low", 0.0)

@@ -9,7 +9,7 @@ import pandas as pd
 
 from outcomes.figures import canvas
 from outcomes.figures.drawing import Drawing, series
-from outcomes.figures.palette import FILLS, INK, SOFT, STROKES
+from outcomes.figures.palette import FILLS, INK, STROKES
 from outcomes.figures.reach import parts
 from outcomes.figures.survival import band, line
 
@@ -54,15 +54,7 @@ def endings_stacked(drawing: Drawing) -> str:
 def _area_labels(ax: canvas.Axes, end: float, middles: list[float], words: list[str]) -> None:
     places = canvas.spread(middles, canvas.LINE / HEIGHT, 0.02, 0.98)
     for middle, place, text in zip(middles, places, words, strict=True):
-        ax.annotate(
-            text,
-            (end, middle),
-            (end * 1.045, place),
-            va="center",
-            fontsize=canvas.SMALL,
-            annotation_clip=False,
-            arrowprops={"arrowstyle": "-", "color": SOFT, "linewidth": 0.6, "shrinkA": 1, "shrinkB": 0},
-        )
+        canvas.label_end(ax, (end, middle), (end * 1.045, place), text)
 
 
 def endings_apart(drawing: Drawing) -> str:

@@ -13,7 +13,7 @@ from matplotlib.figure import Figure as Sheet
 
 from outcomes.figures import canvas
 from outcomes.figures.drawing import Drawing, series
-from outcomes.figures.palette import SOFT, STROKES, UNRELIABLE, Stroke
+from outcomes.figures.palette import STROKES, UNRELIABLE, Stroke
 from outcomes.figures.reach import parts
 from outcomes.tables.format import count
 
@@ -106,20 +106,11 @@ def _censored(ax: Axes, drawn: pd.DataFrame, curve: pd.DataFrame, stroke: Stroke
 
 
 def _end_labels(ax: Axes, ends: list[tuple[float, float, str]]) -> None:
-    """The name of each line beside its end, moved apart where two would overlap."""
+    """The name of each line to the right of the panel, apart from the next, tied to its end."""
     places = canvas.spread([y for _, y, _ in ends], canvas.LINE / HEIGHT, 0.0, 1.0)
     limit = ax.get_xlim()[1]
-    for (x, y, text), place, stroke in zip(ends, places, STROKES, strict=False):
-        near = x + limit * 0.012
-        ax.annotate(
-            text,
-            (near, y),
-            (near + limit * 0.01, place),
-            va="center",
-            fontsize=canvas.SMALL,
-            color=stroke.colour if stroke.colour == STROKES[0].colour else SOFT,
-            annotation_clip=False,
-        )
+    for (x, y, text), place in zip(ends, places, strict=True):
+        canvas.label_end(ax, (x, y), (limit * 1.05, place), text)
 
 
 def _risk_table(paper: Sheet, ax: Axes, drawing: Drawing, risk: dict[str, pd.DataFrame], top: float) -> None:

@@ -65,10 +65,6 @@ def count(value: float) -> str:
 
 
 def x_of_n(x: float, n: float) -> str:
-    """
-    >>> x_of_n(38, 61)
-    '38 of 61'
-    """
     if x > n:
         raise ValueError("a part is larger than its whole")
     return f"{count(x)} of {count(n)}"
@@ -123,11 +119,7 @@ def percent_with_counts(x: float, n: float) -> str:
 
 
 def percent_interval(lower: float, upper: float, n: float) -> str:
-    """The ends of an interval for a share. It is written for every n: small groups need it most.
-
-    >>> percent_interval(0.49, 0.744, 61)
-    '49% to 74%'
-    """
+    """The ends of an interval for a share. It is written for every n: small groups need it most."""
     _check_ends(lower, upper)
     places = percent_places(n)
     return f"{_percentage(lower, places)} to {_percentage(upper, places)}"
@@ -160,10 +152,6 @@ def points(difference: float, n: float) -> str:
 
 
 def points_interval(lower: float, upper: float, n: float) -> str:
-    """
-    >>> points_interval(-0.101, 0.033, 150)
-    '−10 to 3'
-    """
     _check_ends(lower, upper)
     return f"{points(lower, n)} to {points(upper, n)}"
 
@@ -220,6 +208,15 @@ def _bounded(value: float, places: int) -> str:
     smallest = Decimal(1).scaleb(-places)
     exact = _decimal(value)
     return f"<{smallest}" if 0 < exact < smallest / 2 else _text(exact, places)
+
+
+def time_point(value: float) -> str:
+    """A point in time, as short as it is exact to two decimals.
+
+    >>> time_point(30), time_point(0.5), time_point(0.25)
+    ('30', '0.5', '0.25')
+    """
+    return number(value, 2).rstrip("0").rstrip(".")
 
 
 def duration(hours: float) -> str:

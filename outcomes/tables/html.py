@@ -11,6 +11,7 @@ from outcomes.tables.format import MARKS
 from outcomes.tables.kind import KINDS
 from outcomes.tables.table import Cell, Column, Table, anchor, plain_words
 
+SHORT = 15  # rows; a table up to this length is not parted between printed pages
 _FIGURE_SPACE, _POINT_SPACE = "\N{FIGURE SPACE}", "\N{PUNCTUATION SPACE}"
 
 
@@ -20,16 +21,19 @@ def table_html(table: Table, number: int, referred: Collection[str] = ()) -> Mar
     number: the table's number in the report. referred: ids (`anchor`) of the cells a sentence refers to; only
     these cells carry an id.
     """
+    short = " short" if len(table.rows) <= SHORT else ""
     caption = Markup('<caption id="{}">{} {}</caption>').format(
         caption_id(table.key),
         Markup('<span class="label">Table {}.</span>').format(number),
         plain_words(table.caption),
     )
     return Markup(
-        '<div class="table" id="t-{}">\n'
+        '<div class="table{}" id="t-{}">\n'
         '<div class="scroll" role="region" tabindex="0" aria-labelledby="{}">\n'
         "<table>\n{}\n{}\n{}\n</table>\n</div>\n{}</div>"
-    ).format(table.key, caption_id(table.key), caption, _head(table), _body(table, referred), _notes(table))
+    ).format(
+        short, table.key, caption_id(table.key), caption, _head(table), _body(table, referred), _notes(table)
+    )
 
 
 def caption_id(key: str) -> str:

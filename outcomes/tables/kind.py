@@ -44,12 +44,6 @@ def _of_100(share: float, n: float) -> Plain:
     return (write.of_100(share, n),)
 
 
-def _time(value: float) -> str:
-    """A point in time as short as it is exact to two decimals: 30, 0.5, 0.25."""
-    text = write.number(value, 2)
-    return text.rstrip("0").rstrip(".")
-
-
 def _word(text: str) -> str:
     return text
 
@@ -97,7 +91,7 @@ KINDS: Mapping[str, Kind] = MappingProxyType(
             (*_QUARTILES, "unit"),
             _duration_quartiles,
         ),
-        "time": Kind(("time",), _time),
+        "time": Kind(("time",), write.time_point),
         "word": Kind(("text",), _word, ("",), lambda text: (text,), is_number=False),
         **_with_places(0),
         **_with_places(1),
