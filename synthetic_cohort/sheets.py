@@ -1,0 +1,141 @@
+"""Exports as sheets of cells before they are written: who planted what where stays known until the line numbers are."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass, field
+from datetime import date, datetime
+
+import numpy as np
+import pandas as pd
+
+from synthetic_cohort.clock import add_hours, local
+from synthetic_cohort.cohort import Cohort
+
+Cell = str | int | float | datetime | date | None
+
+
+@dataclass
+class Row:
+    """One row of a sheet; run_no 0 belongs to no run of the cohort."""
+
+    cells: list[Cell]
+    run_no: int = 0
+
+
+@dataclass
+class Sheet:
+    """titles: rows above the header. roles: what a column means -> its headers, for the planter of defects."""
+
+    file: str
+    name: str
+    header: list[str]
+    rows: list[Row]
+    roles: dict[str, tuple[str, ...]] = field(default_factory=dict)
+    titles: list[list[Cell]] = field(default_factory=list)
+
+    def place(self, header: str) -> int:
+        return self.header.index(header)
+
+    def get(self, row: Row, role: str) -> Cell:
+        """The first cell of a role."""
+        return row.cells[self.place(self.roles[role][0])]
+
+    def put(self, row: Row, role: str, values: Sequence[Cell]) -> None:
+        """Write one value for each header of the role."""
+        for header, value in zip(self.roles[role], values, strict=True):
+            row.cells[self.place(header)] = value
+
+
+@dataclass(frozen=True)
+class Form:
+    """How a style writes things, for the planter. moment: role and wall-clock time -> cells. number: value -> cell.
+
+    words: key -> the style's word. slips: role -> factor that turns its unit into the one a hurried hand would use.
+    """
+
+    moment: Callable[[str, pd.Timestamp], list[Cell]]
+    number: Callable[[float], Cell]
+    words: dict[str, Cell]
+    slips: dict[str, float]
+    has_error_cells: bool = False
+
+
+@dataclass
+class Tables:
+    """All sheets of one export; the first holds one row a run."""
+
+    style: str
+    form: Form
+    sheets: list[Sheet]
+    flat: pd.DataFrame
+
+    def sheet_with(self, role: str) -> Sheet | None:
+        return next((s for s in self.sheets if role in s.roles), None)
+
+
+Column = tuple[str, str, Sequence[Cell]]
+"""Header, role ('' for none), cells."""
+
+
+def build_sheet(file: str, name: str, columns: Sequence[Column], run_no: Sequence[int],
+                titles: list[list[Cell]] | None = None) -> Sheet:  # fmt: skip
+    """A sheet of columns of equal length. Several columns of one role are kept in order."""
+    roles: dict[str, tuple[str, ...]] = {}
+    for header, role, _ in columns:
+        if role:
+            roles[role] = (*roles.get(role, ()), header)
+    rows = [Row(list(cells), int(n)) for n, *cells in zip(run_no, *(c for _, _, c in columns), strict=True)]
+    return Sheet(file, name, [h for h, _, _ in columns], rows, roles, titles or [])
+
+
+def flat_frame(cohort: Cohort) -> pd.DataFrame:
+    """One row a run with everything of one-row-a-run frames side by side, and moments as wall-clock time (*_at)."""
+    person = cohort.person.drop(columns=["sex", "height_cm", "weight_kg", "birth_date", "frailty"])
+    run = cohort.run.drop(columns=["sex", "height_cm", "weight_kg", "end_h", "left_h", "left_alive", "death_h", "arrest_location",
+                                   "had_arrest", "age_years"])  # fmt: skip
+    flat = run.merge(person, on="person_no", how="left", validate="many_to_one")
+    ending = cohort.ending.drop(columns=["true_end_kind", "entry_h"])
+    for frame in (ending, cohort.recorded, cohort.follow_up, cohort.neuro):
+        flat = flat.merge(frame, on="run_no", how="left", validate="one_to_one")
+    flat["cpc_recorded"] = flat["cpc"].where(flat["is_recorded"].eq(True))
+    flat["mrs_recorded"] = flat["mrs"].where(flat["is_recorded"].eq(True))
+    hours = {
+        "end_at": flat["end_h"], "discharge_at": flat["discharge_h"], "contact_at": flat["contact_h"],
+        "register_death_at": flat["register_death_h"], "arrival_at": flat["entry_h"].where(flat["transferred_in"]),
+        "decision_at": flat["decision_h"], "intubated_at": -flat["intubation_hours"], "arrest_at": flat["arrest_onset_h"],
+    }  # fmt: skip
+    for name, h in hours.items():
+        flat[name] = wall(cohort, flat["start_utc"], h)
+    return flat
+
+
+def wall(cohort: Cohort, start_utc: pd.Series, hours: pd.Series) -> pd.Series:
+    """Wall-clock moments so many hours after a start."""
+    return local(add_hours(start_utc, hours), cohort.programme.zone)
+
+
+def numbers(values: Sequence[float] | pd.Series, digits: int, mark: str) -> list[Cell]:
+    """Numbers as text with a fixed count of digits; empty where missing.
+
+    >>> numbers([1.25, float("nan")], 1, ",")
+    ['1,2', '']
+    """
+    return ["" if pd.isna(v) else f"{v:.{digits}f}".replace(".", mark) for v in values]
+
+
+def moments(values: pd.Series, pattern: str) -> list[Cell]:
+    """Moments as text; empty where missing."""
+    return ["" if pd.isna(v) else v.strftime(pattern) for v in values]
+
+
+def coded(values: Sequence[object] | pd.Series, codes: dict[object, Cell], empty: Cell = "") -> list[Cell]:
+    """Words of the style for our words; True and False are keys too. Missing gives `empty`."""
+    return [empty if pd.isna(v) else codes[bool(v) if isinstance(v, np.bool_) else v] for v in values]
+
+
+def with_tokens(cells: Sequence[Cell], rng: np.random.Generator, tokens: Sequence[str], share: float = 0.3) -> list[Cell]:
+    """Some of the empty cells say in a word that they are empty."""
+    draw = rng.random(len(cells))
+    pick = rng.integers(0, len(tokens), len(cells))
+    return [tokens[p] if c in ("", None) and d < share else c for c, d, p in zip(cells, draw, pick, strict=True)]
