@@ -1,4 +1,4 @@
-"""Laws of the answers: bounds hold whatever the missing value was, information narrows, order changes nothing."""
+"""Laws of the answers: bounds hold whatever was missing, information narrows, order changes nothing."""
 
 from itertools import product
 
@@ -26,7 +26,9 @@ def active(key, options=None):
 
 
 def bounds_of(score, key):
-    tests = [t for item in score.items for row in item.rows for t in row.when if t.input == key and t.interval]
+    tests = [
+        t for item in score.items for row in item.rows for t in row.when if t.input == key and t.interval
+    ]
     return sorted({e for t in tests for e in (t.interval.low, t.interval.high) if e is not None})
 
 
@@ -57,7 +59,7 @@ def complete_runs(draw, key, options=None):
 @st.composite
 def run_and_gaps(draw):
     key = draw(st.sampled_from(IMPLEMENTED))
-    label, options = draw(st.sampled_from(option_sets(key)))
+    _, options = draw(st.sampled_from(option_sets(key)))
     run = draw(complete_runs(key, options))
     speaking = empty_cells_that_speak(active(key, options), run)
     lost = draw(st.lists(st.sampled_from(sorted(set(run) - speaking)), unique=True, max_size=6))
@@ -109,7 +111,9 @@ def test_the_total_lies_inside_the_bounds_whatever_was_missing_and_information_n
 
 
 @settings(max_examples=60, deadline=None)
-@given(st.integers(18, 89), st.integers(0, 3), st.integers(0, 3), st.sampled_from(["save", "pc_ecmo", "tips65"]))
+@given(
+    st.integers(18, 89), st.integers(0, 3), st.integers(0, 3), st.sampled_from(["save", "pc_ecmo", "tips65"])
+)
 def test_an_age_interval_gives_the_hull_of_its_ages(age, before, after, key):
     score = active(key)
     run = {entry.key: sample for entry in score.inputs if (sample := plain(entry)) is not None}
@@ -204,7 +208,7 @@ def test_chunks_give_what_single_rows_give(key, monkeypatch):
 
 @pytest.mark.parametrize("key", WHOLE)
 def test_both_sides_of_every_bound(key):
-    """One step of 0.01 (0.001 where the whole range is below 10) on either side, against the plain reading."""
+    """One step of 0.01 (0.001 where the range ends below 10) either side, against the plain reading."""
     for label, options in option_sets(key):
         score = active(key, options)
         run = {x.key: plain(x) for x in score.inputs}

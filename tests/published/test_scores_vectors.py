@@ -72,7 +72,7 @@ def test_the_vectors_are_all_there():
     }
 
 
-# Ranges as the papers print or imply them: Schmidt 2015 (from memory), Muller 2016, Okada 2020, Biancari 2020,
+# Ranges as the papers print or imply them: Schmidt 2015 (from memory), Muller 2016, Okada 2020, Biancari,
 # Tindale 2023, Yamga 2023, Harjola 2015 (from memory), Pöss 2017, Vincent 1996, Naidu 2022 (ranks A-E).
 RANGES = {
     "save": (-35, 17),
@@ -142,7 +142,7 @@ def test_save_range_over_every_combination_of_rows():
 
 @pytest.mark.parametrize("key", IMPLEMENTED)
 def test_monotone_only_where_claimed(key):
-    """SAVE weight is not monotone (as printed) and claims nothing; every claim holds over the whole range."""
+    """SAVE weight is not monotone (as printed) and claims nothing; every claim holds everywhere."""
     score = active(key)
     for item in score.items:
         if item.kind == "per_unit" or not item.claims_monotone:
