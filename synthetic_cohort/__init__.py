@@ -2,6 +2,7 @@
 
 from synthetic_cohort.cohort import Cohort, generate
 from synthetic_cohort.export import STYLES, Export, write_export
+
 from synthetic_cohort.names import PROGRAMME, Programme
 from synthetic_cohort.settings import Settings
 

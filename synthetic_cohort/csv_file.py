@@ -1,4 +1,4 @@
-"""Sheets as CSV text, and the physical line on which each row begins."""
+"""Sheets as CSV text."""
 
 from __future__ import annotations
 
@@ -6,31 +6,21 @@ import csv
 import io
 from pathlib import Path
 
-from synthetic_cohort.sheets import Row, Sheet
+from synthetic_cohort.sheets import Sheet
 
 
-def csv_text(sheet: Sheet, separator: str) -> tuple[str, list[int]]:
-    """The text and, for each row, the line (from 1) on which it begins; a quoted line break makes a row longer."""
+def csv_text(sheet: Sheet, separator: str) -> str:
+    """The whole file; cells with separators, quotes or line breaks are quoted."""
     buffer = io.StringIO(newline="")
     writer = csv.writer(buffer, delimiter=separator, lineterminator="\r\n")
     for title in sheet.titles:
         writer.writerow(title)
     writer.writerow(sheet.header)
-    line = len(sheet.titles) + 2
-    lines = []
     for row in sheet.rows:
-        lines.append(line)
         writer.writerow(["" if c is None else c for c in row.cells])
-        line += 1 + _breaks(row)
-    return buffer.getvalue(), lines
+    return buffer.getvalue()
 
 
-def _breaks(row: Row) -> int:
-    return sum(c.count("\n") for c in row.cells if isinstance(c, str))
-
-
-def write_csv(sheet: Sheet, path: Path, separator: str, encoding: str) -> list[int]:
-    """Write one sheet; return the first physical line of each row."""
-    text, lines = csv_text(sheet, separator)
-    path.write_bytes(text.encode(encoding))
-    return lines
+def write_csv(sheet: Sheet, path: Path, separator: str, encoding: str) -> None:
+    """Write one sheet."""
+    path.write_bytes(csv_text(sheet, separator).encode(encoding))

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from datetime import date, datetime
 
@@ -34,6 +34,19 @@ class Sheet:
     roles: dict[str, tuple[str, ...]] = field(default_factory=dict)
     titles: list[list[Cell]] = field(default_factory=list)
 
+    @property
+    def is_csv(self) -> bool:
+        return self.file.endswith(".csv")
+
+    def lines(self) -> list[int]:
+        """Physical line (from 1) on which each row begins; in a CSV a line break inside a cell makes a row longer."""
+        line = len(self.titles) + 2
+        lines = []
+        for row in self.rows:
+            lines.append(line)
+            line += 1 + (sum(c.count("\n") for c in row.cells if isinstance(c, str)) if self.is_csv else 0)
+        return lines
+
     def place(self, header: str) -> int:
         return self.header.index(header)
 
@@ -49,16 +62,48 @@ class Sheet:
 
 @dataclass(frozen=True)
 class Form:
-    """How a style writes things, for the planter. moment: role and wall-clock time -> cells. number: value -> cell.
+    """How a style writes things, for the planter.
 
-    words: key -> the style's word. slips: role -> factor that turns its unit into the one a hurried hand would use.
+    patterns: role -> one strftime pattern for each of its headers, None for a typed date cell, "%Y" for a typed year;
+    the key "" holds the usual pattern. decimal_mark: None where numbers are typed. words: key -> the style's word.
+    slips: role -> (factor to the unit that a hurried hand would use, lowest and highest value that the written unit
+    allows).
     """
 
-    moment: Callable[[str, pd.Timestamp], list[Cell]]
-    number: Callable[[float], Cell]
+    patterns: dict[str, tuple[str | None, ...]]
+    decimal_mark: str | None
     words: dict[str, Cell]
-    slips: dict[str, float]
-    has_error_cells: bool = False
+    slips: dict[str, tuple[float, float, float]]
+
+    def moment(self, role: str, at: pd.Timestamp, month: str | None = None) -> list[Cell]:
+        """Cells of a moment; `month` writes those two letters in place of the month."""
+        cells: list[Cell] = []
+        for pattern in self.patterns.get(role, self.patterns[""]):
+            if pattern is None:
+                cells.append(at.to_pydatetime())
+            elif pattern == "%Y":
+                cells.append(at.year)
+            else:
+                cells.append(at.strftime(pattern.replace("%m", month or "%m")))
+        return cells
+
+    def is_text(self, role: str) -> bool:
+        """Whether moments of this role are written as text with a month."""
+        return all(p is not None and p != "%Y" for p in self.patterns.get(role, self.patterns[""]))
+
+    def number(self, value: float) -> Cell:
+        if self.decimal_mark is None:
+            return int(value) if value == int(value) else round(value, 6)
+        return f"{value:.6g}".replace(".", self.decimal_mark)
+
+    def value(self, cell: Cell) -> float | None:
+        """The number in a cell, None if there is none."""
+        if isinstance(cell, (int, float)):
+            return float(cell)
+        try:
+            return float(str(cell).replace(self.decimal_mark or ".", ".")) if cell else None
+        except ValueError:
+            return None
 
 
 @dataclass
@@ -69,6 +114,7 @@ class Tables:
     form: Form
     sheets: list[Sheet]
     flat: pd.DataFrame
+    zone: str
 
     def sheet_with(self, role: str) -> Sheet | None:
         return next((s for s in self.sheets if role in s.roles), None)

@@ -99,20 +99,15 @@ def north_tables(cohort: Cohort) -> Tables:
     columns += [*_ending(flat), *_outcome(flat), *_onsets(cohort, flat)]
     columns.append(("Remarks", "", list(remarks(rng, len(flat)))))
     sheet = build_sheet(FILE, "", columns, flat["run_no"].tolist())
-    return Tables("north", _form(), [sheet], flat)
+    return Tables("north", _form(), [sheet], flat, cohort.programme.zone)
 
 
 def _form() -> Form:
-    def moment(role: str, at: pd.Timestamp) -> list[Cell]:
-        if role == "end":
-            return [at.strftime(_DAY), at.strftime(_CLOCK)]
-        return [at.strftime(_DAY if role == "birth" else _AT)]
-
     return Form(
-        moment=moment,
-        number=lambda v: f"{v:g}".replace(".", ","),
-        words={"alive": "y", "unknown_code": "?x", "text": "see chart", "error": "#REF!", "died": ENDS["death"]},
-        slips={"lactate": 9.0078, "creatinine": 1 / 88.4017, "haemoglobin": 0.1},
+        patterns={"": (_AT,), "end": (_DAY, _CLOCK), "birth": (_DAY,)},
+        decimal_mark=",",
+        words={"alive": "y", "unknown_code": "?x", "text": "see chart", "error": "#REF!"},
+        slips={"lactate": (9.0078, 0.05, 40.0), "creatinine": (1 / 88.4017, 5.0, 3000.0), "haemoglobin": (0.1, 15.0, 250.0)},
     )
 
 
@@ -130,7 +125,7 @@ def _start(flat: pd.DataFrame) -> list[Column]:
     return [
         ("On pump", "start", moments(flat["start_local"], _AT)),
         ("Cause", "cause", coded(flat["indication_group"], CAUSES)),
-        ("Height [m]", "", numbers(flat["height_cm"] / 100.0, 2, ",")), ("Weight [kg]", "", numbers(flat["weight_kg"], 1, ",")),
+        ("Height [m]", "", numbers(flat["height_cm"] / 100.0, 2, ",")), ("Weight [kg]", "weight", numbers(flat["weight_kg"], 1, ",")),
         ("Aim on day 0", "", coded(flat["intended_pathway"], PLANS)),
         ("Cannulated", "", coded(flat["cannulated_where"], PLACES)),
         ("Came on pump", "", coded(flat["transferred_in"], YES_NO)), ("Arrived here", "", moments(flat["arrival_at"], _AT)),

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import pandas as pd
-
 from synthetic_cohort.cohort import Cohort
 from synthetic_cohort.sheets import Cell, Column, Form, Tables, build_sheet, coded, flat_frame, moments, numbers
 
@@ -12,7 +10,7 @@ _AT, _DAY = "%Y-%m-%dT%H:%M", "%Y-%m-%d"
 _YES_NO: dict[object, Cell] = {True: "yes", False: "no"}
 
 _VALUES = (
-    ("height_cm", "height_cm", 0, ""), ("weight_kg", "weight_kg", 1, ""),
+    ("height_cm", "height_cm", 0, ""), ("weight_kg", "weight_kg", 1, "weight"),
     ("lactate", "lactate_mmol_l", 1, "lactate"), ("ph", "ph", 2, ""), ("bicarbonate", "bicarbonate_mmol_l", 1, ""),
     ("creatinine", "creatinine_umol_l", 0, "creatinine"), ("bilirubin", "bilirubin_umol_l", 0, "bilirubin"), ("alt", "alt_u_l", 0, ""),
     ("platelets", "platelets_10_9_l", 0, "platelets"), ("systolic", "sbp_mmhg", 0, "pressure"), ("diastolic", "dbp_mmhg", 0, "pressure"),
@@ -42,16 +40,13 @@ def plain_tables(cohort: Cohort) -> Tables:
         ("discharge", "discharge", moments(flat["discharge_at"], _AT)), ("alive", "alive", coded(flat["is_alive_at_discharge"], _YES_NO)),
         ("death", "death", moments(flat["register_death_at"], _AT)), ("cpc", "cpc", numbers(flat["cpc_recorded"], 0, ".")),
     ]  # fmt: skip
-    return Tables("plain", _form(), [build_sheet(FILE, "", columns, flat["run_no"].tolist())], flat)
+    return Tables("plain", _form(), [build_sheet(FILE, "", columns, flat["run_no"].tolist())], flat, cohort.programme.zone)
 
 
 def _form() -> Form:
-    def moment(role: str, at: pd.Timestamp) -> list[Cell]:
-        return [at.strftime(_DAY if role == "birth" else _AT)]
-
     return Form(
-        moment=moment,
-        number=lambda v: f"{v:g}",
-        words={"alive": "yes", "unknown_code": "x9", "text": "high", "error": "#VALUE!", "died": "death"},
-        slips={"lactate": 9.0078, "creatinine": 1 / 88.4017},
+        patterns={"": (_AT,), "birth": (_DAY,)},
+        decimal_mark=".",
+        words={"alive": "yes", "unknown_code": "x9", "text": "high", "error": "#VALUE!"},
+        slips={"lactate": (9.0078, 0.05, 40.0), "creatinine": (1 / 88.4017, 5.0, 3000.0)},
     )
