@@ -25,6 +25,7 @@ __all__ = [
     "Sheet",
     "axes",
     "label_end",
+    "percent_across",
     "percent_axis",
     "saved",
     "sheet",
@@ -99,6 +100,14 @@ def percent_axis(ax: Axes, top: float = 1.0) -> None:
     ax.set_yticks(ticks, [f"{number(tick * 100, 0)}%" for tick in ticks])
     ax.grid(axis="y")
     ax.set_axisbelow(True)
+
+
+def percent_across(ax: Axes, label: str) -> None:
+    """A horizontal axis from 0 to 100 per cent."""
+    ticks = [0.0, 0.2, 0.4, 0.6, 0.8, 1.0]
+    ax.set_xlim(0, 1)
+    ax.set_xticks(ticks, [f"{number(tick * 100, 0)}%" for tick in ticks])
+    ax.set_xlabel(label, fontsize=SMALL)
 
 
 def time_axis(ax: Axes, ticks: Sequence[float], label: str, end: float) -> None:

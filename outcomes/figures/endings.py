@@ -10,7 +10,6 @@ import pandas as pd
 from outcomes.figures import canvas
 from outcomes.figures.drawing import Drawing, series
 from outcomes.figures.palette import FILLS, INK, STROKES
-from outcomes.figures.reach import parts
 from outcomes.figures.survival import band, line
 
 LEFT, RIGHT, HEIGHT, BELOW, ABOVE = 40.0, 128.0, 230.0, 40.0, 24.0
@@ -58,8 +57,11 @@ def _area_labels(ax: canvas.Axes, end: float, middles: list[float], words: list[
 
 
 def endings_apart(drawing: Drawing) -> str:
-    """One panel a cause, all with the same axes, each with its band; as `endings_stacked` plus lower, upper
-    and, if the result has it, at_risk.
+    """One panel a cause, all with the same axes, each with its band; as `endings_stacked` plus lower and
+    upper.
+
+    The curves run to `end`: when few are still supported because most have ended, an incidence is as well
+    known as before, so the rule for survival curves does not apply. `end` must lie within follow-up.
     """
     end = drawing.options["end"]
     down = -(-len(drawing.labels) // ACROSS)
@@ -79,12 +81,10 @@ def endings_apart(drawing: Drawing) -> str:
 
 
 def _one_cause(ax: canvas.Axes, curve: pd.DataFrame, end: float) -> None:
-    if "at_risk" not in curve:
-        curve = curve.assign(at_risk=float("inf"))
-    firm, loose = parts(curve, end)
-    band(ax, firm, STROKES[0])
-    line(ax, firm, STROKES[0])
-    line(ax, loose, STROKES[0], reliable=False)
+    kept = curve[curve["time"] <= end]
+    whole = pd.concat([kept, kept.iloc[[-1]].assign(time=end)], ignore_index=True)
+    band(ax, whole, STROKES[0])
+    line(ax, whole, STROKES[0])
     ax.set_xlabel("")
 
 

@@ -22,13 +22,21 @@ class Reach:
 def reach(curve: pd.DataFrame) -> Reach:
     """curve: one group in order of time with columns time and at_risk (just before that time).
 
-    Dashed from the first time with fewer than 10 at risk, or fewer than a tenth of the start if that is more;
-    ended at the first time with fewer than 5.
+    Dashed from the first time with fewer than 10 at risk, or fewer than a tenth of the start if that is
+    more; ended at the first time with fewer than 5. Whoever is left after the last row counts, if events
+    and censored are there to tell: a curve does not run on once all have left.
     """
     start = float(curve["at_risk"].max()) if len(curve) else 0.0
-    return Reach(
-        _first_below(curve, max(LEAST_AT_RISK, LEAST_SHARE * start)), _first_below(curve, STOP_BELOW)
-    )
+    seen = _with_those_left(curve)
+    return Reach(_first_below(seen, max(LEAST_AT_RISK, LEAST_SHARE * start)), _first_below(seen, STOP_BELOW))
+
+
+def _with_those_left(curve: pd.DataFrame) -> pd.DataFrame:
+    """The curve with one row more: how many remain at risk just after its last time."""
+    if curve.empty or not {"events", "censored"} <= set(curve.columns):
+        return curve
+    last = curve.iloc[[-1]]
+    return pd.concat([curve, last.assign(at_risk=last["at_risk"] - last["events"] - last["censored"])])
 
 
 def _first_below(curve: pd.DataFrame, limit: float) -> float | None:

@@ -14,7 +14,7 @@ from outcomes.tables.csv_text import csv_text
 from outcomes.tables.html import cell_text, table_html
 from outcomes.tables.table import Cell, Table, anchor, plain_words
 
-SHORT_LINE, SHORT_ITEMS = 72, 5
+SHORT_LINE, SHORT_ITEMS = 100, 5
 
 
 @dataclass(frozen=True)
@@ -111,7 +111,7 @@ class Page:
         return [(s, len(s.cautions)) for s in self.report.sections if s.cautions]
 
     def short_provenance(self) -> list[tuple[str, str]]:
-        """What the foot of the first page repeats of the provenance: the first few items of one short line."""
+        """What the foot of the first page repeats of the provenance: a few items of one short line."""
         items = [(label, lines[0]) for label, lines in self.report.provenance.items() if len(lines) == 1]
         return [(label, line) for label, line in items if len(line) <= SHORT_LINE][:SHORT_ITEMS]
 

@@ -100,6 +100,55 @@ def ending_curve(n: int = 60) -> Result:
     )
 
 
+def fifths() -> tuple[Result, Result]:
+    """Observed and predicted by fifths, and a prediction a run."""
+    rows: list[dict[str, object]] = [
+        {
+            "predicted": 0.1 + i / 5,
+            "estimate": (0.1 + i / 5) ** 1.2,
+            "lower": i / 6,
+            "upper": min(1.0, 0.35 + i / 5),
+        }
+        for i in range(5)
+    ]
+    rows.append({"predicted": 0.95, "estimate": 0.9})
+    rug = tidy([{"predicted": i / 40} for i in range(41)], ["predicted"])
+    return Result(tidy(rows, ["predicted", "estimate", "lower", "upper"]), SHARE), Result(rug, SHARE)
+
+
+def blocks() -> Result:
+    """Survival of twenty blocks of runs with a centre line and limits; the seventh lies below them."""
+    rows = [
+        {
+            "time": float(i),
+            "estimate": 0.1 if i == 7 else 0.5 + (i % 5) / 20,
+            "centre": 0.55,
+            "lower": 0.2,
+            "upper": 0.9,
+        }
+        for i in range(1, 21)
+    ]
+    return Result(tidy(rows, ["time", "estimate", "centre", "lower", "upper"]), SHARE)
+
+
+def centres_and_limits() -> tuple[Result, Result]:
+    units = [{"group": f"c{i}", "at_risk": 10 * i, "estimate": 0.4 + i / 50} for i in range(1, 8)]
+    limits: list[dict[str, object]] = [
+        {
+            "group": level,
+            "at_risk": n,
+            "lower": max(0, 0.5 - width / n**0.5),
+            "upper": min(1, 0.5 + width / n**0.5),
+        }
+        for level, width in (("usual", 1.0), ("wide", 1.5))
+        for n in (5, 10, 20, 40, 80)
+    ]
+    return (
+        Result(tidy(units, ["group", "at_risk", "estimate"]), SHARE),
+        Result(tidy(limits, ["group", "at_risk", "lower", "upper"]), SHARE),
+    )
+
+
 def dot_rows(scale: float = 1.0) -> Result:
     rows = [
         {"group": "bleeding", "estimate": 21 * scale, "lower": 15 * scale, "upper": 28 * scale},

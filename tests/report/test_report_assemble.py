@@ -8,6 +8,7 @@ from made_report import ANALYSES, FILES, made
 from outcomes.analysis.result import Method, Result, tidy
 from outcomes.errors import DisclosureRefused, OutcomesError, UsageError
 from outcomes.report.assemble import Options, assemble, assemble_files
+from outcomes.report.render import render
 from outcomes.report.section_file import Source, read_section
 from outcomes.report.watch import watched
 from outcomes.study.answer import Answer, ColumnOf, FigureOf, RowOf, TableOf
@@ -243,3 +244,23 @@ def test_every_analysis_of_the_made_report_is_used():
     assert {s.split('analysis = "')[1].split('"')[0] for s in FILES.values() if "analysis = " in s} == set(
         ANALYSES
     )
+
+
+def test_captions_and_descriptions_are_filled_and_hold_no_pointer():
+    front = "[caption]\nruns = \"Of {{ cell('runs', 'a', 'n') }} run\""
+    assert report_of("x", front).sections[0].tables[0].caption == "Of 1 run"
+    with pytest.raises(UsageError, match="pointer in a caption"):
+        report_of("x", "[caption]\nruns = \"{{ table('runs') }}\"")
+
+
+def test_a_verbatim_block_is_printed_as_it_stands():
+    blocks = report_of("```\n{{ a }}  *b*\n```").sections[0].findings
+    assert [(b.kind, b.parts) for b in blocks] == [("verbatim", (("text", "{{ a }}  *b*"),))]
+
+
+def test_a_page_needs_no_analysis_and_no_first_head():
+    files = [("000_a.md", '+++\ntitle = "How to start"\nkind = "page"\n+++\nRun `outcomes`, 3 times.\n')]
+    about = FILES["report.toml"] + "free_numbers = true\n"
+    report = assemble_files("manual", [*files, ("report.toml", about)], {}, None, Options("internal"))
+    assert report.sections[0].findings[0].head == ""
+    assert "<code>outcomes</code>" in render(report)

@@ -6,7 +6,7 @@ from pathlib import Path
 import pytest
 
 from outcomes import resources
-from outcomes.report.section_file import read_section
+from outcomes.report.section_file import SectionFile, read_section
 
 TEMPLATES = dict(resources.report_files("templates"))
 MARKUP = {n: t for n, t in TEMPLATES.items() if n.endswith(".j2")}
@@ -80,3 +80,33 @@ def test_section_files_can_be_read_and_use_no_banned_word(path):
 @pytest.mark.parametrize("name", sorted(MARKUP))
 def test_templates_use_no_banned_word(name):
     assert not BANNED.search(re.sub(r"\{\{.*?\}\}|\{%.*?%\}|<[^>]+>", " ", MARKUP[name], flags=re.DOTALL))
+
+
+FOLDERS = sorted({path.parent for path in SECTIONS if path.parent.name != "manual"})
+SLOT = re.compile(r"\{\{.*?\}\}")
+
+
+def sections_of(folder: Path) -> list[SectionFile]:
+    return [read_section(path.name, path.read_text("utf-8")) for path in sorted(folder.glob("*.md"))]
+
+
+@pytest.mark.parametrize("folder", FOLDERS, ids=[f.name for f in FOLDERS])
+def test_a_report_opens_with_its_summary_and_says_how_it_was_made(folder):
+    sections = sections_of(folder)
+    assert (sections[0].order, sections[0].key, sections[0].kind) == (0, "summary", "answer")
+    kinds = [section.kind for section in sections]
+    for needed in ("methods", "references", "provenance"):
+        assert kinds.count(needed) == 1
+    assert all(section.title.endswith("?") for section in sections if section.kind == "answer")
+
+
+@pytest.mark.parametrize("folder", FOLDERS, ids=[f.name for f in FOLDERS])
+def test_summaries_and_sentences_are_short(folder):
+    sections = sections_of(folder)
+    findings = [b for b in sections[0].blocks if b.head == "" and b.kind in ("paragraph", "item")]
+    assert len(findings) <= 7
+    for section in sections:
+        for block in section.blocks:
+            text = re.sub(r"\{%.*?%\}", "", SLOT.sub("X", block.text))
+            for sentence in re.split(r"(?<=[.?:;])\s+", text):
+                assert len(sentence.split()) <= 40, sentence

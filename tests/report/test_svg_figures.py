@@ -9,7 +9,16 @@ from xml.etree import ElementTree as Tree
 
 import pandas as pd
 import pytest
-from made_results import ENDINGS, TICKS, dot_rows, ending_curve, survival_curve
+from made_results import (
+    ENDINGS,
+    TICKS,
+    blocks,
+    centres_and_limits,
+    dot_rows,
+    ending_curve,
+    fifths,
+    survival_curve,
+)
 
 from outcomes.analysis.result import Result, tidy
 from outcomes.figures.draw import KINDS, draw
@@ -51,6 +60,15 @@ def drawing(kind: str, key: str, label: str = "") -> Drawing:
         }
         labels = {**ENDINGS, "recovery": label or "Weaned"}
         options = {"end": 30.0}
+    elif kind == "calibration":
+        results = dict(zip(("points", "rug"), fifths(), strict=True))
+        words["equal"] = label or "as predicted"
+    elif kind == "time_order":
+        results, options = {"points": blocks()}, {"percent": 1}
+        words["centre"] = label or "median"
+    elif kind == "funnel":
+        results = dict(zip(("units", "limits"), centres_and_limits(), strict=True))
+        labels, options = {"usual": label or "95% limits", "wide": "99.8% limits"}, {"target": 0.5}
     elif kind == "dots":
         results = {"now": dot_rows(), "before": dot_rows(1.2)}
         labels = {"bleeding": label or "Major bleeding", "limb": "Limb ischaemia", "stroke": "Stroke"}
@@ -175,6 +193,14 @@ def test_reach_of_a_curve():
     assert reach(curve([])) == Reach(None, None)
 
 
+def test_a_curve_does_not_run_on_once_all_have_left():
+    ended = curve([40, 30, 20]).assign(events=[0, 1, 0], censored=[0, 9, 20])
+    assert reach(ended) == Reach(reliable_until=2, stop=2)
+    firm, loose = parts(ended, end=30.0)
+    assert firm["time"].max() == 2
+    assert loose.empty
+
+
 def test_parts_of_a_curve_meet_and_end_where_they_should():
     firm, loose = parts(curve([30, 20, 10, 9, 5, 4, 1]), end=30.0)
     assert list(firm["time"]) == [0, 1, 2, 3]
@@ -220,3 +246,42 @@ def test_ratios_have_a_logarithmic_axis_with_plain_numbers():
     texts = [e.text for e in Tree.fromstring(draw("dots", ratio)).iter() if str(e.tag).endswith("text")]
     assert {"0.5", "1", "2"} <= set(texts)
     assert "e" not in "".join(t for t in texts if t and t[0].isdigit())
+
+
+def test_a_point_outside_the_limits_has_a_ring_and_no_colour():
+    svg = draw("time_order", drawing("time_order", "one"))
+    assert {"median", "lower", "upper"} <= {e.text for e in Tree.fromstring(svg).iter() if e.text}
+    inside = blocks().table.assign(estimate=0.55)
+    given = {"points": Result(inside, blocks().method)}
+    calm = Drawing("one", TITLE, SENTENCE, steps_table(), given, {}, {}, {"percent": 1})
+    assert svg.count("<use") == draw("time_order", calm).count("<use") + 1
+
+
+def test_a_chart_without_limits_has_none():
+    bare = blocks().table[["time", "estimate"]]
+    plain = Drawing(
+        "one", TITLE, SENTENCE, steps_table(), {"points": Result(bare, blocks().method)}, {}, {}, {}
+    )
+    texts = {e.text for e in Tree.fromstring(draw("time_order", plain)).iter() if e.text}
+    assert not texts & {"centre", "lower", "upper"}
+
+
+def test_causes_at_different_times_cannot_be_stacked():
+    good = drawing("endings_stacked", "one")
+    table = good.frame("curve")
+    short = Result(table[~((table["cause"] == "lvad") & (table["time"] > 9))], ending_curve().method)
+    bad = Drawing("one", TITLE, SENTENCE, good.table, {"curve": short}, good.labels, good.words, good.options)
+    with pytest.raises(ValueError, match="same times"):
+        draw("endings_stacked", bad)
+
+
+@pytest.mark.parametrize("kind", ["endings_stacked", "endings_apart"])
+def test_without_given_times_the_axis_has_six_ticks_at_most(kind):
+    good = drawing(kind, "one")
+    plain = Drawing(
+        "one", TITLE, SENTENCE, good.table, {"curve": good.results["curve"]}, good.labels, {}, good.options
+    )
+    texts = [e.text for e in Tree.fromstring(draw(kind, plain)).iter() if str(e.tag).endswith("text")]
+    assert {"0", "30"} <= set(texts)
+    assert len([t for t in texts if t in ("0", "6", "12", "18", "24", "30")]) <= 6 * len(ENDINGS)
+    assert "Supported" not in texts
