@@ -57,8 +57,7 @@ def _area_labels(ax: canvas.Axes, end: float, middles: list[float], words: list[
 
 
 def endings_apart(drawing: Drawing) -> str:
-    """One panel a cause, all with the same axes, each with its band; as `endings_stacked` plus lower and
-    upper.
+    """One panel a cause, same axes, each with its band; as `endings_stacked` plus lower and upper.
 
     The curves run to `end`: when few are still supported because most have ended, an incidence is as well
     known as before, so the rule for survival curves does not apply. `end` must lie within follow-up.
