@@ -14,7 +14,9 @@ select
   coalesce(e.end_h, e.open_days * 24.0) as support_h,
   o.is_alive_at_discharge, o.is_still_inpatient, o.discharge_h, o.discharge_to,
   n.value as cpc,
-  r.observable_to_day_30, r.observable_to_day_90, r.observable_to_day_180, r.observable_to_day_365
+  r.observable_to_day_30, r.observable_to_day_90, r.observable_to_day_180, r.observable_to_day_365,
+  lead(r.hours_from_first_run) over (partition by r.person_key order by r.hours_from_first_run, r.run_key)
+    - (r.hours_from_first_run + e.end_h) as supported_again_after_h
 from record.support_run r
 join record.person p using (person_key)
 left join record.indication i on i.run_key = r.run_key and i.is_primary

@@ -28,16 +28,20 @@ with pre as (
     max(value) filter (where analyte = 'anion_gap') as anion_gap_mmol_l,
     min(value) filter (where analyte = 'pao2') as pao2_mmhg,
     max(value) filter (where analyte = 'fio2') as fio2,
-    min(value) filter (where analyte = 'urine_day') as urine_ml_d,
+    min(value) filter (where analyte = 'urine_day') as urine_ml_day,
     max(value) filter (where analyte = 'peak_inspiratory_pressure') as peak_inspiratory_pressure_cmh2o
   from pre group by run_key
 ), paired as (
   select s.run_key, min(s.value - d.value) as pulse_pressure_mmhg
   from pre s join pre d on d.run_key = s.run_key and d.window_label = s.window_label and d.reading = s.reading
   where s.analyte = 'sbp' and d.analyte = 'dbp' group by s.run_key
+), oxygen as (
+  select p.run_key, min(p.value / f.value) as pao2_fio2_mmhg
+  from pre p join pre f on f.run_key = p.run_key and f.window_label = p.window_label
+  where p.analyte = 'pao2' and f.analyte = 'fio2' group by p.run_key
 ), arrest as (
   select run_key, max(low_flow_min) as low_flow_min, max(call_to_arrival_min) as call_to_arrival_min,
-    bool_or(shockable_on_arrival) as rhythm_shockable_at_arrival, any_value(first_rhythm) as first_rhythm
+    bool_or(shockable_on_arrival) as rhythm_shockable_at_arrival, bool_or(first_rhythm in ('vf', 'pulseless_vt')) as had_first_rhythm_shockable
   from record.arrest_episode group by run_key
 ), doses as (
   select run_key,
@@ -46,7 +50,7 @@ with pre as (
     max(dose) filter (where drug = 'adrenaline') as adrenaline_ug_kg_min,
     max(dose) filter (where drug = 'noradrenaline') as noradrenaline_ug_kg_min,
     max(dose) filter (where drug = 'milrinone') as milrinone_ug_kg_min,
-    max(dose) filter (where drug = 'vasopressin') as vasopressin_iu_kg_min,
+    max(dose) filter (where drug = 'vasopressin') as vasopressin_u_kg_min,
     max(dose) filter (where drug = 'levosimendan') as levosimendan_ug_kg_min
   from record.vasoactive_dose join vocabulary.window_label using (window_label) where is_pre_support group by run_key
 )
@@ -65,12 +69,14 @@ select
   case when s.ventilated_at_zero is not null then s.ventilated_at_zero
        when s.intubation_hours is not null then true
        when x.missing_kind = 'not_applicable' then false end as was_ventilated,
-  s.compressions_at_cannulation, s.acute_renal_failure as has_acute_renal_failure, s.liver_failure as has_liver_failure,
-  s.cns_dysfunction as has_cns_dysfunction, s.confusion_at_presentation, s.acute_coronary_syndrome,
+  s.compressions_at_cannulation as had_compressions_at_cannulation, s.acute_renal_failure as has_acute_renal_failure, s.liver_failure as has_liver_failure,
+  s.cns_dysfunction as has_cns_dysfunction, s.confusion_at_presentation as had_confusion_at_presentation, s.acute_coronary_syndrome as is_acute_coronary_syndrome,
+  s.pci_done as had_pci,
   s.timi_flow_after_pci, s.aortic_arch_surgery, s.preoperative_stroke_or_unconscious, s.lv_function,
   h.chronic_kidney_disease as has_chronic_kidney_disease, h.prior_stroke, h.prior_cardiac_surgery,
+  h.durable_vad_before as is_after_durable_vad,
   coalesce(h.prior_myocardial_infarction or h.prior_cabg, h.prior_myocardial_infarction, h.prior_cabg) as prior_mi_or_cabg,
-  w.* exclude (run_key), p.pulse_pressure_mmhg, a.* exclude (run_key), d.* exclude (run_key)
+  w.* exclude (run_key), p.pulse_pressure_mmhg, o.pao2_fio2_mmhg, a.* exclude (run_key), d.* exclude (run_key)
 from mart.run r
 left join record.indication i on i.run_key = r.run_key and i.is_primary
 left join record.pre_support_state s on s.run_key = r.run_key
@@ -78,6 +84,7 @@ left join record.history h on h.run_key = r.run_key
 left join record.missing_value x on x.run_key = r.run_key and x.field in ('pre_support_state.intubated_at', 'pre_support_state.intubation_hours')
 left join worst w on w.run_key = r.run_key
 left join paired p on p.run_key = r.run_key
+left join oxygen o on o.run_key = r.run_key
 left join arrest a on a.run_key = r.run_key
 left join doses d on d.run_key = r.run_key
 order by r.run_key
