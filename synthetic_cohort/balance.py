@@ -23,7 +23,8 @@ from synthetic_cohort.settings import HAZARD_GROUPS, Settings
 
 @lru_cache(maxsize=16)
 def balanced_hazards(settings: Settings) -> Array:
-    """`group_hazards` with the two constants of each group (death, recovery) that undo the mean effect of severity.
+    """`group_hazards` with the two constants of each group (death, recovery) that undo the mean effect of
+    severity.
 
     Found by Newton's method on: proportion that dies on support, and proportion still on support on day 4.
     """
@@ -36,8 +37,8 @@ def balanced_hazards(settings: Settings) -> Array:
     for _ in range(8):
         here = _landmarks(plain, settings, logs)
         step = 1e-4
-        by_death = (_landmarks(plain, settings, logs + [step, 0.0]) - here) / step
-        by_recovery = (_landmarks(plain, settings, logs + [0.0, step]) - here) / step
+        by_death = (_landmarks(plain, settings, logs + np.array([step, 0.0])) - here) / step
+        by_recovery = (_landmarks(plain, settings, logs + np.array([0.0, step])) - here) / step
         slope = np.stack([by_death, by_recovery], axis=2)
         logs = logs + np.linalg.solve(slope, (target - here)[:, :, None])[:, :, 0]
     return _with_constants(plain, logs)
@@ -51,11 +52,14 @@ def _with_constants(hazards: Array, logs: Array) -> Array:
 
 
 def _landmarks(hazards: Array, settings: Settings, logs: Array) -> Array:
-    """(group, 2): death or withdrawal in the end, still on support on day 4; averaged over severity, no age limit."""
+    """(group, 2): death or withdrawal in the end, still on support on day 4; averaged over severity, no age
+    limit."""
     n = len(Z_GRID)
     grid = np.repeat(_with_constants(hazards, logs), n, axis=0)
     z = np.tile(Z_GRID, len(hazards))
-    incidence, on_support = incidence_at(scaled(grid, z, np.zeros(len(z), dtype=bool), settings), np.array([4.0, 2000.0]))
+    incidence, on_support = incidence_at(
+        scaled(grid, z, np.zeros(len(z), dtype=bool), settings), np.array([4.0, 2000.0])
+    )
     died = incidence[:, 1][:, DEADLY_KINDS].sum(axis=1)
     pair = np.stack([died, on_support[:, 0]], axis=1).reshape(len(hazards), n, 2)
     return np.asarray(np.einsum("gzk,gz->gk", pair, _severity_by_group(settings)))

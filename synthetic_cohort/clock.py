@@ -9,8 +9,6 @@ import pandas as pd
 
 from synthetic_cohort.hazards import Array
 
-MINUTE = np.timedelta64(1, "m")
-
 
 def stream(seed: int, topic: str) -> np.random.Generator:
     """A random stream of its own for each topic, so that switching one off leaves the others unchanged."""
@@ -23,10 +21,13 @@ def to_minute(hours: Array) -> Array:
 
 
 def add_hours(start: pd.Series, hours: Array | pd.Series) -> pd.Series:
-    """Moments so many hours after `start` (same kind of time), to the minute; NaT where the hours are missing."""
+    """Moments so many hours after `start` (same kind of time), to the minute; NaT where the hours are
+    missing."""
     minutes = np.round(np.asarray(hours, dtype=float) * 60.0)
-    gap = pd.to_timedelta(pd.Series(minutes, index=start.index), unit="m")
-    return start + gap
+    gap = np.full(len(minutes), np.timedelta64("NaT"), dtype="timedelta64[m]")
+    known = np.isfinite(minutes)
+    gap[known] = minutes[known].astype("int64").astype("timedelta64[m]")
+    return start + pd.Series(gap.astype("timedelta64[ns]"), index=start.index)
 
 
 def local(utc: pd.Series, zone: str) -> pd.Series:

@@ -26,8 +26,8 @@ from synthetic_cohort.weaning import configuration_frame, weaning_frame
 class Cohort:
     """What really happened, and what an extract on `extract_date` at noon could know of it.
 
-    Times are hours after the start of the run, on whole minutes. run has one row a run; every other frame but person
-    and attempt refers to it by run_no. `inputs` is complete, `recorded` has the gaps of a real source.
+    Times are hours after the start of the run, on whole minutes. run has one row a run; every other frame but
+    person and attempt refers to it by run_no. `inputs` is complete, `recorded` has the gaps of a real source.
     """
 
     settings: Settings
@@ -49,12 +49,19 @@ class Cohort:
     transfer: pd.DataFrame
 
 
-def generate(n_runs: int, seed: int, *, start_year: int = 2021, years: int = 3, programme: Programme = PROGRAMME,
-             settings: Settings | None = None) -> Cohort:  # fmt: skip
+def generate(
+    n_runs: int,
+    seed: int,
+    *,
+    start_year: int = 2021,
+    years: int = 3,
+    programme: Programme = PROGRAMME,
+    settings: Settings | None = None,
+) -> Cohort:
     """Exactly n_runs runs that began in `years` calendar years from start_year on.
 
-    A person transferred in on support is seen only if support lasted until arrival. Raises ValueError for fewer than
-    one run or year.
+    A person transferred in on support is seen only if support lasted until arrival. Raises ValueError for
+    fewer than one run or year.
     """
     if n_runs < 1 or years < 1:
         raise ValueError("at least one run and one year")
@@ -63,7 +70,9 @@ def generate(n_runs: int, seed: int, *, start_year: int = 2021, years: int = 3, 
     twice = TwiceHours(programme.zone, start_year, start_year + years + 11)
     people = draw_persons(math.ceil(n_runs * 1.06) + 60, seed, settings)
     course = draw_course(people, seed, settings)
-    cutoff = pd.Timestamp(last).replace(hour=12).tz_localize(programme.zone).tz_convert("UTC").tz_localize(None)
+    cutoff = (
+        pd.Timestamp(last).replace(hour=12).tz_localize(programme.zone).tz_convert("UTC").tz_localize(None)
+    )
     people["start_utc"] = twice.after(_starts(len(people), seed, start_year, cutoff, programme, settings))
     for column in ("end_h", "again_h", "left_h", "death_h"):
         course[column] = twice.hours_after(people["start_utc"], course[column])
@@ -71,23 +80,39 @@ def generate(n_runs: int, seed: int, *, start_year: int = 2021, years: int = 3, 
     course["again_end_h"] = twice.hours_after(second_start, course["again_end_h"])
     people["entry_h"] = _arrivals(len(people), seed, settings, twice, people["start_utc"])
     run = _runs(people, course, n_runs, cutoff)
-    run = _describe(run, seed, programme)
+    run = _describe(run, twice, seed, programme)
     ending = ending_frame(run, cutoff, seed)
-    inputs = input_frame(run, seed, settings)
+    inputs = input_frame(run, twice, seed, settings)
     recorded = recorded_inputs(inputs, run, seed, settings)
     complication = complication_frame(run, ending, twice, seed, settings)
     follow_up = follow_up_frame(run, ending, cutoff, twice, seed, settings)
     person = add_identity(_persons(run), seed)
     return Cohort(
-        settings, programme, seed, (date(start_year, 1, 1), last), last,
-        person, run, ending, inputs, recorded, complication, weaning_frame(run, ending, twice, seed), follow_up,
-        neuro_frame(run, follow_up, seed, settings), attempt_frame(n_runs, cutoff, start_year, programme, seed, settings),
-        configuration_frame(run, ending, complication), transfer_frame(run, ending, programme, seed),
-    )  # fmt: skip
+        settings,
+        programme,
+        seed,
+        (date(start_year, 1, 1), last),
+        last,
+        person,
+        run,
+        ending,
+        inputs,
+        recorded,
+        complication,
+        weaning_frame(run, ending, twice, seed),
+        follow_up,
+        neuro_frame(run, follow_up, seed, settings),
+        attempt_frame(n_runs, cutoff, start_year, programme, seed, settings),
+        configuration_frame(run, ending, complication),
+        transfer_frame(run, ending, programme, seed),
+    )
 
 
-def _starts(n: int, seed: int, start_year: int, cutoff: pd.Timestamp, programme: Programme, settings: Settings) -> pd.Series:
-    """Starts of support in UTC, spread evenly over the period; some crowd before the extract if that is asked for."""
+def _starts(
+    n: int, seed: int, start_year: int, cutoff: pd.Timestamp, programme: Programme, settings: Settings
+) -> pd.Series:
+    """Starts of support in UTC, spread evenly over the period; some crowd before the extract if that is asked
+    for."""
     rng = stream(seed, "starts")
     first = pd.Timestamp(start_year, 1, 1).tz_localize(programme.zone).tz_convert("UTC").tz_localize(None)
     minutes = int((cutoff - first) / pd.Timedelta(minutes=1))
@@ -125,16 +150,27 @@ def _runs(people: pd.DataFrame, course: pd.DataFrame, n_runs: int, cutoff: pd.Ti
     again = both[chosen & has_second].copy()
     shift = again["again_h"].to_numpy()
     again = again.assign(
-        nth_run=2, hours_from_first_run=shift, start_utc=add_hours(again["start_utc"], shift), entry_h=0.0,
-        end_h=again["again_end_h"], kind=again["again_kind"], left_h=again["left_h"] - shift,
-        death_h=again["death_h"] - shift, is_ecpr=False, had_arrest=False, arrest_location=None,
-        hazard_group=again["group"], age_exact=again["age_exact"] + shift / 8766.0,
-    )  # fmt: skip
+        nth_run=2,
+        hours_from_first_run=shift,
+        start_utc=add_hours(again["start_utc"], shift),
+        entry_h=0.0,
+        end_h=again["again_end_h"],
+        kind=again["again_kind"],
+        left_h=again["left_h"] - shift,
+        death_h=again["death_h"] - shift,
+        is_ecpr=False,
+        had_arrest=False,
+        arrest_location=None,
+        hazard_group=again["group"],
+        age_exact=again["age_exact"] + shift / 8766.0,
+    )
     first["person"], again["person"] = first.index, again.index
     run = pd.concat([first, again]).sort_values(["start_utc", "person"], kind="stable").reset_index(drop=True)
     run["person_no"] = pd.factorize(run["person"])[0] + 1
     run.insert(0, "run_no", np.arange(1, len(run) + 1))
-    return run.drop(columns=["person", "again_h", "again_end_h", "again_kind"]).assign(is_rerun_followed=_followed(run))
+    return run.drop(columns=["person", "again_h", "again_end_h", "again_kind"]).assign(
+        is_rerun_followed=_followed(run)
+    )
 
 
 def _followed(run: pd.DataFrame) -> pd.Series:
@@ -142,7 +178,7 @@ def _followed(run: pd.DataFrame) -> pd.Series:
     return run.groupby("person_no")["nth_run"].transform("max") > run["nth_run"]
 
 
-def _describe(run: pd.DataFrame, seed: int, programme: Programme) -> pd.DataFrame:
+def _describe(run: pd.DataFrame, twice: TwiceHours, seed: int, programme: Programme) -> pd.DataFrame:
     """Words for numbers, local time, completed age, plan at start, place of cannulation."""
     rng = stream(seed, "describe")
     n = len(run)
@@ -151,7 +187,9 @@ def _describe(run: pd.DataFrame, seed: int, programme: Programme) -> pd.DataFram
     run["indication_group"] = np.array([g.key for g in GROUPS])[run["group"]]
     run["hazard_group"] = np.array([g.key for g in HAZARD_GROUPS])[run["hazard_group"]]
     run["true_end_kind"] = np.array(ENDINGS)[run["kind"]]
-    born = run["start_local"].dt.normalize() - pd.to_timedelta(np.floor(run["age_exact"] * 365.2425), unit="D")
+    born = run["start_local"].dt.normalize() - pd.to_timedelta(
+        np.floor(run["age_exact"] * 365.2425), unit="D"
+    )
     first_birth = born.groupby(run["person_no"]).transform("first")
     run["birth_date"] = first_birth
     day = run["start_local"]
@@ -162,7 +200,7 @@ def _describe(run: pd.DataFrame, seed: int, programme: Programme) -> pd.DataFram
     run["cannulated_where"] = _places(run, rng)
     run["right_sided_monitoring"] = rng.random(n) < 0.9
     run["unloading_at_start"] = rng.random(n) < 0.31
-    run["decision_h"] = -to_minute(np.exp(rng.normal(np.log(1.5), 0.6, n)))
+    run["decision_h"] = twice.hours_after(run["start_utc"], -np.exp(rng.normal(np.log(1.5), 0.6, n)))
     return run.drop(columns=["kind", "bmi"])
 
 
@@ -186,6 +224,6 @@ def _places(run: pd.DataFrame, rng: np.random.Generator) -> Array:
 
 def _persons(run: pd.DataFrame) -> pd.DataFrame:
     columns = ["person_no", "sex", "height_cm", "weight_kg", "birth_date", "frailty"]
-    return run.sort_values(["person_no", "nth_run"])[columns].drop_duplicates("person_no").reset_index(drop=True)
-
-
+    return (
+        run.sort_values(["person_no", "nth_run"])[columns].drop_duplicates("person_no").reset_index(drop=True)
+    )

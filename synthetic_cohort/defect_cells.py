@@ -32,7 +32,14 @@ def impossible_month(p: Planter) -> None:
     if form.is_text("discharge"):
         row = p.pick(p.any_run(), None, "discharge")
         if row is not None:
-            p.put("impossible_month", p.runs, row, "discharge", form.moment("discharge", p.at(row)["discharge_at"], "13"), "cell")
+            p.put(
+                "impossible_month",
+                p.runs,
+                row,
+                "discharge",
+                form.moment("discharge", p.at(row)["discharge_at"], "13"),
+                "cell",
+            )
         return
     events = p.tables.sheet_with("onset")
     row = p.pick(p.any_run(), events, "onset") if events else None
@@ -45,7 +52,10 @@ def skipped_hour(p: Planter) -> None:
     """A discharge in the hour that the clocks left out in spring."""
     gaps = _skipped(p)
     left = p.tables.flat["discharge_at"]
-    soon = [left.notna() & (g > p.tables.flat["end_at"]) & (g < p.tables.flat["end_at"] + pd.Timedelta(days=200)) for g in gaps]
+    soon = [
+        left.notna() & (g > p.tables.flat["end_at"]) & (g < p.tables.flat["end_at"] + pd.Timedelta(days=200))
+        for g in gaps
+    ]
     for gap, suits in zip(gaps, soon, strict=True):
         row = p.pick(suits, None, "discharge") if suits.any() else None
         if row is not None:
@@ -93,7 +103,9 @@ def negative_platelets(p: Planter) -> None:
     row = p.pick(p.any_run(), None, "platelets")
     if row is not None:
         value = p.tables.form.value(p.runs.get(row, "platelets"))
-        p.put("negative_platelets", p.runs, row, "platelets", [p.tables.form.number(-(value or 90.0))], "cell")
+        p.put(
+            "negative_platelets", p.runs, row, "platelets", [p.tables.form.number(-(value or 90.0))], "cell"
+        )
 
 
 def text_in_number(p: Planter) -> None:

@@ -22,7 +22,14 @@ def end_before_start(p: Planter) -> None:
     """Support ends five hours before it began."""
     row = p.pick(p.tables.flat["end_kind"] == "recovery", None, "end")
     if row is not None:
-        p.put("end_before_start", p.runs, row, "end", p.tables.form.moment("end", p.at(row)["start_local"] - 5 * HOUR), "run")
+        p.put(
+            "end_before_start",
+            p.runs,
+            row,
+            "end",
+            p.tables.form.moment("end", p.at(row)["start_local"] - 5 * HOUR),
+            "run",
+        )
 
 
 def discharge_before_end(p: Planter) -> None:
@@ -44,7 +51,11 @@ def died_yet_alive(p: Planter) -> None:
 def death_before_end(p: Planter) -> None:
     """Came off support alive, three hours after death."""
     flat = p.tables.flat
-    row = p.pick((flat["end_kind"] == "recovery") & (flat["end_h"] > 10.0) & flat["register_death_at"].isna(), None, "end")
+    row = p.pick(
+        (flat["end_kind"] == "recovery") & (flat["end_h"] > 10.0) & flat["register_death_at"].isna(),
+        None,
+        "end",
+    )
     if row is not None and "death" in p.runs.roles:
         at = p.at(row)["end_at"] - 3 * HOUR
         p.put("death_before_end", p.runs, row, "death", p.tables.form.moment("death", at), "run")

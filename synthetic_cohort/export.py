@@ -1,4 +1,5 @@
-"""Write an export of a cohort in one of the styles, with planted defects, and the mapping file that goes with it."""
+"""Write an export of a cohort in one of the styles, with planted defects, and the mapping file that goes with
+it."""
 
 from __future__ import annotations
 
@@ -24,8 +25,8 @@ STYLES = tuple(sorted(_MAKERS))
 
 @dataclass(frozen=True)
 class Export:
-    """paths: the files of the export in the order of the mapping. mapping: the mapping file, with the period and the
-    dates of this cohort. defects: the truth about what was planted."""
+    """paths: the files of the export in the order of the mapping. mapping: the mapping file, with the period
+    and the dates of this cohort. defects: the truth about what was planted."""
 
     paths: tuple[Path, ...]
     mapping: Path
@@ -39,11 +40,13 @@ def tables_of(cohort: Cohort, style: str) -> Tables:
     return _MAKERS[style](cohort)
 
 
-def write_export(cohort: Cohort, style: str, folder: Path, seed: int, defects: Sequence[str] = (), each: int = 1) -> Export:
+def write_export(
+    cohort: Cohort, style: str, folder: Path, seed: int, defects: Sequence[str] = (), each: int = 1
+) -> Export:
     """Write one style into an existing folder: the export and `<style>.toml`.
 
-    seed: of the defects. defects: kinds to plant, `each` times each; kinds that the style can not carry are left out.
-    Raises ValueError for an unknown style or kind.
+    seed: of the defects. defects: kinds to plant, `each` times each; kinds that the style can not carry are
+    left out. Raises ValueError for an unknown style or kind.
     """
     tables, truth = plant(tables_of(cohort, style), seed, defects, each)
     path = Path(folder) / tables.sheets[0].file

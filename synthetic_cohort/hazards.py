@@ -1,10 +1,12 @@
 """Competing exits from support: cause-specific hazards, constant within bands of days.
 
-An ending is drawn as the first of competing exits; the way taken is never drawn before the duration, because that
-would give the survivors of the first days their ending in advance.
+An ending is drawn as the first of competing exits; the way taken is never drawn before the duration, because
+that would give the survivors of the first days their ending in advance.
 """
 
 from __future__ import annotations
+
+from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
@@ -23,8 +25,9 @@ from synthetic_cohort.settings import (
     Settings,
 )
 
-Array = NDArray[np.float64]
-Index = NDArray[np.int64]
+Array = NDArray[Any]
+Index = NDArray[Any]
+Flags = NDArray[Any]
 
 KIND = {name: i for i, name in enumerate(ENDINGS)}
 DEADLY_KINDS = [KIND["death"], KIND["withdrawal"]]
@@ -58,8 +61,9 @@ def group_hazards(settings: Settings) -> Array:
     return out
 
 
-def scaled(hazards: Array, z: Array, is_old: NDArray[np.bool_], settings: Settings) -> Array:
-    """Hazards of single runs: (run, band, ending) with severity and the age limit of pump and transplant applied."""
+def scaled(hazards: Array, z: Array, is_old: Flags, settings: Settings) -> Array:
+    """Hazards of single runs: (run, band, ending) with severity and the age limit of pump and transplant
+    applied."""
     out = hazards.copy()
     out[:, :, DEADLY_KINDS] *= np.exp(settings.z_death * z)[:, None, None]
     out[:, :, RECOVERY_KIND] *= np.exp(settings.z_recovery * z)[:, None]
@@ -90,12 +94,13 @@ def incidence_at(hazards: Array, days: Array) -> tuple[Array, Array]:
     return out_incidence, out_survived
 
 
-def draw_endings(rng: np.random.Generator, hazards: Array, group: Index, z: Array, is_old: NDArray[np.bool_],
-                 settings: Settings) -> tuple[Array, Index]:  # fmt: skip
+def draw_endings(
+    rng: np.random.Generator, hazards: Array, group: Index, z: Array, is_old: Flags, settings: Settings
+) -> tuple[Array, Index]:
     """Time (hours) and number in ENDINGS of the first exit of each run.
 
-    hazards: (hazard group, band, ending). One unit-exponential clock a run runs against the total hazard; the exit
-    is then chosen by the shares of the hazards at that time.
+    hazards: (hazard group, band, ending). One unit-exponential clock a run runs against the total hazard; the
+    exit is then chosen by the shares of the hazards at that time.
     """
     n = len(group)
     widths = np.diff(np.array([*BAND_DAYS, np.inf]))

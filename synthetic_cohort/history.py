@@ -5,6 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pandas as pd
 
+from synthetic_cohort.given import given
 from synthetic_cohort.hazards import Array
 
 
@@ -37,7 +38,9 @@ def add_history(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFrame, 
     out["acute_renal_failure"] = (out["creatinine_umol_l"] > 133.0) & ~chance(0.10)
     high = (out["bilirubin_umol_l"] >= 33.0) | (out["alt_u_l"] > 70.0) | (out["ast_u_l"] > 70.0)
     out["liver_failure"] = high & ~chance(0.15)
-    out["cns_dysfunction"] = chance(np.where(run["had_arrest"], 0.22, 0.08) * np.exp(0.15 * np.clip(z, -2, 2)))
+    out["cns_dysfunction"] = chance(
+        np.where(run["had_arrest"], 0.22, 0.08) * np.exp(0.15 * np.clip(z, -2, 2))
+    )
     out["confusion_at_presentation"] = chance(np.clip(0.40 + 0.10 * z, 0.05, 0.95))
     out["support_device_before"] = chance(0.20)
     worst = (out["lactate_mmol_l"] > 10.0) | run["is_ecpr"].to_numpy()
@@ -61,12 +64,12 @@ def add_arrest(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFrame) -
     rhythms = np.array(["vf", "pulseless_vt", "pea", "asystole"])
     edges = np.where((ecpr & outside)[:, None], [0.62, 0.70, 0.90], [0.28, 0.38, 0.91])
     first = rhythms[(rng.random(n)[:, None] > edges).sum(axis=1)]
-    out["first_rhythm"] = np.where(arrest, first, None)
+    out["first_rhythm"] = given(arrest, first)
     shockable = np.isin(first, ("vf", "pulseless_vt"))
     still = np.where(rng.random(n) < 0.75, shockable, rng.random(n) < 0.15)
-    out["shockable_on_arrival"] = np.where(arrest & outside, still, None)
+    out["shockable_on_arrival"] = given(arrest & outside, still)
     way = np.round(np.clip(rng.normal(32.0, 10.0, n), 8.0, 90.0))
     out["call_to_arrival_min"] = np.where(arrest & outside, way, np.nan)
-    out["witnessed"] = np.where(arrest, rng.random(n) < np.where(outside, 0.80, 0.95), None)
-    out["bystander_cpr"] = np.where(arrest & outside, rng.random(n) < 0.70, None)
-    out["rosc_before_pump"] = np.where(arrest, ~ecpr, None)
+    out["witnessed"] = given(arrest, rng.random(n) < np.where(outside, 0.80, 0.95))
+    out["bystander_cpr"] = given(arrest & outside, rng.random(n) < 0.70)
+    out["rosc_before_pump"] = given(arrest, ~ecpr)

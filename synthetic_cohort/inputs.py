@@ -1,7 +1,8 @@
-"""What was known before support: every quantity that the usual pre-support scores ask for, in canonical units.
+"""What was known before support: every quantity that the usual pre-support scores ask for, in canonical
+units.
 
-Severity pulls lactate, pH, bicarbonate, creatinine, coma score and vasoactive doses in the directions that published
-cohorts show; how strongly is a project choice. Column names carry the unit.
+Severity pulls lactate, pH, bicarbonate, creatinine, coma score and vasoactive doses in the directions that
+published cohorts show; how strongly is a project choice. Column names carry the unit.
 """
 
 from __future__ import annotations
@@ -9,28 +10,57 @@ from __future__ import annotations
 import numpy as np
 import pandas as pd
 
-from synthetic_cohort.clock import stream
+from synthetic_cohort.clock import TwiceHours, stream
 from synthetic_cohort.hazards import Array
 from synthetic_cohort.history import add_arrest, add_history
 from synthetic_cohort.settings import Settings
 
 # Share of gaps, missing completely at random. Prothrombin activity is not measured where INR is used.
 GAPS = {
-    "lactate_mmol_l": 0.03, "lactate_admission_mmol_l": 0.08, "ph": 0.03, "bicarbonate_mmol_l": 0.04,
-    "base_excess_mmol_l": 0.05, "pao2_mmhg": 0.04, "paco2_mmhg": 0.04, "fio2": 0.06, "spo2_percent": 0.05,
-    "creatinine_umol_l": 0.02, "creatinine_admission_umol_l": 0.06, "urea_mmol_l": 0.05, "bilirubin_umol_l": 0.06,
-    "alt_u_l": 0.08, "ast_u_l": 0.08, "glucose_admission_mmol_l": 0.05, "haemoglobin_g_l": 0.02,
-    "platelets_10_9_l": 0.03, "inr": 0.05, "prothrombin_activity_percent": 0.60, "ck_mb_activity_u_l": 0.50,
-    "albumin_g_l": 0.15, "anion_gap_mmol_l": 0.10, "gcs_total": 0.08, "lvef_percent": 0.10, "urine_day_ml": 0.15,
-    "temperature_cel": 0.05, "cvp_mmhg": 0.30, "heart_rate_per_min": 0.02, "peak_inspiratory_pressure_cmh2o": 0.05,
-    "low_flow_min": 0.05, "no_flow_min": 0.35, "shock_stage": 0.05, "confusion_at_presentation": 0.08,
-    "sbp_mmhg": 0.02, "first_rhythm": 0.08, "weight_kg": 0.02, "height_cm": 0.04,
-}  # fmt: skip
+    "lactate_mmol_l": 0.03,
+    "lactate_admission_mmol_l": 0.08,
+    "ph": 0.03,
+    "bicarbonate_mmol_l": 0.04,
+    "base_excess_mmol_l": 0.05,
+    "pao2_mmhg": 0.04,
+    "paco2_mmhg": 0.04,
+    "fio2": 0.06,
+    "spo2_percent": 0.05,
+    "creatinine_umol_l": 0.02,
+    "creatinine_admission_umol_l": 0.06,
+    "urea_mmol_l": 0.05,
+    "bilirubin_umol_l": 0.06,
+    "alt_u_l": 0.08,
+    "ast_u_l": 0.08,
+    "glucose_admission_mmol_l": 0.05,
+    "haemoglobin_g_l": 0.02,
+    "platelets_10_9_l": 0.03,
+    "inr": 0.05,
+    "prothrombin_activity_percent": 0.60,
+    "ck_mb_activity_u_l": 0.50,
+    "albumin_g_l": 0.15,
+    "anion_gap_mmol_l": 0.10,
+    "gcs_total": 0.08,
+    "lvef_percent": 0.10,
+    "urine_day_ml": 0.15,
+    "temperature_cel": 0.05,
+    "cvp_mmhg": 0.30,
+    "heart_rate_per_min": 0.02,
+    "peak_inspiratory_pressure_cmh2o": 0.05,
+    "low_flow_min": 0.05,
+    "no_flow_min": 0.35,
+    "shock_stage": 0.05,
+    "confusion_at_presentation": 0.08,
+    "sbp_mmhg": 0.02,
+    "first_rhythm": 0.08,
+    "weight_kg": 0.02,
+    "height_cm": 0.04,
+}
 
 
-def input_frame(run: pd.DataFrame, seed: int, settings: Settings) -> pd.DataFrame:
-    """One row a run with every input, complete. What cannot be asked of a run is missing here too: coronary flow
-    without an intervention, airway pressure without ventilation, arrest times without an arrest."""
+def input_frame(run: pd.DataFrame, twice: TwiceHours, seed: int, settings: Settings) -> pd.DataFrame:
+    """One row a run with every input, complete. What cannot be asked of a run is missing here too: coronary
+    flow without an intervention, airway pressure without ventilation, arrest times without an arrest."""
     rng = stream(seed, "inputs")
     z = run["z"].to_numpy() * settings.z_inputs
     out = run[["run_no", "sex", "age_years", "weight_kg", "height_cm"]].copy()
@@ -40,11 +70,14 @@ def input_frame(run: pd.DataFrame, seed: int, settings: Settings) -> pd.DataFram
     _add_doses(out, rng, z)
     add_history(out, rng, run, z)
     add_arrest(out, rng, run)
+    out["intubation_hours"] = 0.0 - twice.hours_after(run["start_utc"], -out["intubation_hours"])
+    out["arrest_onset_h"] = twice.hours_after(run["start_utc"], out["arrest_onset_h"])
     return out
 
 
 def recorded_inputs(inputs: pd.DataFrame, run: pd.DataFrame, seed: int, settings: Settings) -> pd.DataFrame:
-    """The same with gaps: at random, and no blood pressure of its own for most who were cannulated in compressions."""
+    """The same with gaps: at random, and no blood pressure of its own for most who were cannulated in
+    compressions."""
     rng = stream(seed, "gaps")
     out = inputs.copy()
     if not settings.has_missing:
@@ -58,7 +91,9 @@ def recorded_inputs(inputs: pd.DataFrame, run: pd.DataFrame, seed: int, settings
     return out
 
 
-def lognormal(rng: np.random.Generator, median: Array | float, sd: float, n: int, shift: Array | float = 0.0) -> Array:
+def lognormal(
+    rng: np.random.Generator, median: Array | float, sd: float, n: int, shift: Array | float = 0.0
+) -> Array:
     """Lognormal draws; shift is added on the log scale."""
     return np.asarray(np.exp(np.log(median) + shift + rng.normal(0.0, sd, n)))
 
@@ -71,7 +106,9 @@ def _add_blood(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFrame, z
     out["lactate_admission_mmol_l"] = np.round(np.clip(lactate * lognormal(rng, 0.75, 0.3, n), 0.5, 30.0), 1)
     ph = np.select([ecpr, arrest], [7.05, 7.18], 7.26) + 0.14 * (-0.55 * z + 0.835 * rng.standard_normal(n))
     out["ph"] = np.round(np.clip(ph, 6.65, 7.60), 2)
-    out["bicarbonate_mmol_l"] = np.round(np.clip(18.5 + 5.0 * (-0.5 * z + 0.866 * rng.standard_normal(n)), 5.0, 36.0), 1)
+    out["bicarbonate_mmol_l"] = np.round(
+        np.clip(18.5 + 5.0 * (-0.5 * z + 0.866 * rng.standard_normal(n)), 5.0, 36.0), 1
+    )
     base = 0.93 * (out["bicarbonate_mmol_l"] - 24.4 + 14.8 * (out["ph"] - 7.4))
     out["base_excess_mmol_l"] = np.round(np.clip(base, -35.0, 15.0), 1)
     carbon = out["bicarbonate_mmol_l"] / (0.0307 * 10 ** (out["ph"] - 6.1))
@@ -84,18 +121,26 @@ def _add_blood(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFrame, z
     inr = np.clip(lognormal(rng, 1.45, 0.28, n, 0.1 * z), 0.9, 5.8)
     out["inr"] = np.round(inr, 1)
     out["prothrombin_activity_percent"] = np.round(np.clip(95.0 / inr + rng.normal(0, 8.0, n), 12.0, 118.0))
-    out["anion_gap_mmol_l"] = np.round(np.clip(9.0 + 0.8 * out["lactate_mmol_l"] + rng.normal(0, 3.0, n), 4.0, 44.0), 1)
+    out["anion_gap_mmol_l"] = np.round(
+        np.clip(9.0 + 0.8 * out["lactate_mmol_l"] + rng.normal(0, 3.0, n), 4.0, 44.0), 1
+    )
 
 
 def _add_organs(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFrame, z: Array) -> None:
     n = len(out)
-    chronic = rng.random(n) < np.where(run["indication_group"] == "decompensated_chronic_heart_failure", 0.25, 0.10)
+    chronic = rng.random(n) < np.where(
+        run["indication_group"] == "decompensated_chronic_heart_failure", 0.25, 0.10
+    )
     out["chronic_kidney_disease"] = chronic
     creatinine = lognormal(rng, np.where(chronic, 190.0, 115.0), 0.38, n, 0.3 * z)
     out["creatinine_umol_l"] = np.round(np.clip(creatinine, 36.0, 880.0))
-    out["creatinine_admission_umol_l"] = np.round(np.clip(creatinine * lognormal(rng, 0.85, 0.2, n), 34.0, 880.0))
+    out["creatinine_admission_umol_l"] = np.round(
+        np.clip(creatinine * lognormal(rng, 0.85, 0.2, n), 34.0, 880.0)
+    )
     out["egfr_ml_min_1_73m2"] = np.round(_filtration(out), 0)
-    out["urea_mmol_l"] = np.round(np.clip(lognormal(rng, np.where(chronic, 15.0, 9.0), 0.45, n, 0.15 * z), 2.0, 58.0), 1)
+    out["urea_mmol_l"] = np.round(
+        np.clip(lognormal(rng, np.where(chronic, 15.0, 9.0), 0.45, n, 0.15 * z), 2.0, 58.0), 1
+    )
     out["bilirubin_umol_l"] = np.round(np.clip(lognormal(rng, 18.0, 0.7, n, 0.15 * z), 3.0, 380.0))
     out["alt_u_l"] = np.round(np.clip(lognormal(rng, 80.0, 1.2, n, 0.3 * z), 8.0, 9500.0))
     out["ast_u_l"] = np.round(np.clip(out["alt_u_l"] * lognormal(rng, 1.4, 0.4, n), 8.0, 9900.0))
@@ -113,7 +158,9 @@ def _filtration(out: pd.DataFrame) -> Array:
     ratio = out["creatinine_umol_l"].to_numpy() / 88.4 / np.where(female, 0.7, 0.9)
     power = np.where(female, -0.241, -0.302)
     rate = 142.0 * np.minimum(ratio, 1.0) ** power * np.maximum(ratio, 1.0) ** -1.2
-    return np.asarray(np.clip(rate * 0.9938 ** out["age_years"].to_numpy() * np.where(female, 1.012, 1.0), 5.0, 120.0))
+    return np.asarray(
+        np.clip(rate * 0.9938 ** out["age_years"].to_numpy() * np.where(female, 1.012, 1.0), 5.0, 120.0)
+    )
 
 
 def _add_circulation(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFrame, z: Array) -> None:
@@ -128,8 +175,11 @@ def _add_circulation(out: pd.DataFrame, rng: np.random.Generator, run: pd.DataFr
     right = (run["indication_group"] == "pulmonary_embolism").to_numpy()
     lvef = np.where(right, 48.0, 20.0) - 2.0 * z + rng.normal(0, 8.0, n)
     out["lvef_percent"] = np.round(np.clip(lvef, 5.0, 65.0))
-    out["lv_function"] = np.select([out["lvef_percent"] < 30, out["lvef_percent"] < 42, out["lvef_percent"] < 52],
-                                   ["severe", "moderate", "mild"], "normal")  # fmt: skip
+    out["lv_function"] = np.select(
+        [out["lvef_percent"] < 30, out["lvef_percent"] < 42, out["lvef_percent"] < 52],
+        ["severe", "moderate", "mild"],
+        "normal",
+    )
     ventilated = run["is_ecpr"].to_numpy() | (rng.random(n) < 0.82)
     out["ventilated_at_zero"] = ventilated
     hours = np.clip(np.where(run["is_ecpr"], rng.exponential(1.2, n), rng.exponential(16.0, n)), 0.0, 400.0)
@@ -142,11 +192,14 @@ def _add_doses(out: pd.DataFrame, rng: np.random.Generator, z: Array) -> None:
     """Vasoactive doses at the highest in the 6 h before support; 0 is not given."""
     n = len(out)
     for drug, share, median, top, digits in (
-        ("noradrenaline_ug_kg_min", 0.85, 0.25, 1.9, 2), ("adrenaline_ug_kg_min", 0.35, 0.12, 1.9, 2),
-        ("dobutamine_ug_kg_min", 0.45, 6.0, 19.5, 1), ("dopamine_ug_kg_min", 0.08, 6.0, 19.5, 1),
-        ("milrinone_ug_kg_min", 0.12, 0.35, 0.74, 2), ("levosimendan_ug_kg_min", 0.04, 0.1, 0.2, 2),
+        ("noradrenaline_ug_kg_min", 0.85, 0.25, 1.9, 2),
+        ("adrenaline_ug_kg_min", 0.35, 0.12, 1.9, 2),
+        ("dobutamine_ug_kg_min", 0.45, 6.0, 19.5, 1),
+        ("dopamine_ug_kg_min", 0.08, 6.0, 19.5, 1),
+        ("milrinone_ug_kg_min", 0.12, 0.35, 0.74, 2),
+        ("levosimendan_ug_kg_min", 0.04, 0.1, 0.2, 2),
         ("vasopressin_iu_kg_min", 0.25, 0.0004, 0.001, 5),
-    ):  # fmt: skip
+    ):
         given = rng.random(n) < share
         dose = np.round(np.clip(lognormal(rng, median, 0.5, n, 0.45 * z), 10.0**-digits, top), digits)
         out[drug] = np.where(given, dose, 0.0)

@@ -1,4 +1,5 @@
-"""Who is who at a given severity: shares of hazard groups and of those above the age limit, for exact integration."""
+"""Who is who at a given severity: shares of hazard groups and of those above the age limit, for exact
+integration."""
 
 from __future__ import annotations
 
@@ -35,7 +36,7 @@ def share_old(group: Group, z: Array, settings: Settings) -> Array:
     mean, sd = age_moments(group, z)
     low, high = (normal_cdf((edge - mean) / sd) for edge in AGE_RANGE)
     limit = normal_cdf((LVAD_TRANSPLANT_AGE_LIMIT + 1.0 - mean) / sd)
-    return settings.over_89 + (1 - settings.over_89) * (high - limit) / (high - low)
+    return np.asarray(settings.over_89 + (1 - settings.over_89) * (high - limit) / (high - low))
 
 
 def share_arrest(group: Group, z: Array, settings: Settings) -> Array:
@@ -45,7 +46,8 @@ def share_arrest(group: Group, z: Array, settings: Settings) -> Array:
 
 
 def cells(settings: Settings) -> tuple[Array, Array, Array, Array, Array]:
-    """The mixture as weighted cells: (hazard group, indication, severity, above the age limit, weight), each 1-d.
+    """The mixture as weighted cells: (hazard group, indication, severity, above the age limit, weight), each
+    1-d.
 
     The weights add up to one.
     """
@@ -55,7 +57,11 @@ def cells(settings: Settings) -> tuple[Array, Array, Array, Array, Array]:
         arrest = share_arrest(group, Z_GRID, settings)
         old = share_old(group, Z_GRID, settings)
         pumped = arrest * group.extracorporeal
-        for number, share in ((i, 1 - pumped), (inside, pumped * (1 - group.out)), (outside, pumped * group.out)):
+        for number, share in (
+            (i, 1 - pumped),
+            (inside, pumped * (1 - group.out)),
+            (outside, pumped * group.out),
+        ):
             for is_old, part in ((0.0, 1 - old), (1.0, old)):
                 weight = group.share * Z_WEIGHT * share * part
                 n = np.ones_like(Z_GRID)

@@ -21,20 +21,77 @@ class Programme:
 PROGRAMME = Programme()
 
 _FIRST = (
-    "Avocet", "Bracken", "Cinnabar", "Dunlin", "Ember", "Feldspar", "Garnet", "Hazelle", "Ibisa", "Junipera", "Knapweed",
-    "Larkspur", "Mallowe", "Nightjar", "Onyxa", "Plovera", "Quartza", "Redshank", "Siskin", "Tansya", "Umbel", "Vervain",
-    "Whinchat", "Yarrowe", "Zirconia",
-)  # fmt: skip
+    "Avocet",
+    "Bracken",
+    "Cinnabar",
+    "Dunlin",
+    "Ember",
+    "Feldspar",
+    "Garnet",
+    "Hazelle",
+    "Ibisa",
+    "Junipera",
+    "Knapweed",
+    "Larkspur",
+    "Mallowe",
+    "Nightjar",
+    "Onyxa",
+    "Plovera",
+    "Quartza",
+    "Redshank",
+    "Siskin",
+    "Tansya",
+    "Umbel",
+    "Vervain",
+    "Whinchat",
+    "Yarrowe",
+    "Zirconia",
+)
 _LAST = (
-    "Agateveil", "Bogmyrtle", "Cragwillow", "Dolomitson", "Eiderfen", "Flintwort", "Gneissling", "Hoopoeton", "Ironmoss",
-    "Jasperthorn", "Kittiwold", "Lapwingham", "Marlbrook-Stane", "Nuthatchley", "Obsidianko", "Pumicetree", "Quailstone",
-    "Rushglint", "Sandpiperov", "Tufaborn", "Ungulith", "Vetchworth", "Wheatearson", "Xylithe", "Yewgravel", "Zephyrsedge",
-)  # fmt: skip
+    "Agateveil",
+    "Bogmyrtle",
+    "Cragwillow",
+    "Dolomitson",
+    "Eiderfen",
+    "Flintwort",
+    "Gneissling",
+    "Hoopoeton",
+    "Ironmoss",
+    "Jasperthorn",
+    "Kittiwold",
+    "Lapwingham",
+    "Marlbrook-Stane",
+    "Nuthatchley",
+    "Obsidianko",
+    "Pumicetree",
+    "Quailstone",
+    "Rushglint",
+    "Sandpiperov",
+    "Tufaborn",
+    "Ungulith",
+    "Vetchworth",
+    "Wheatearson",
+    "Xylithe",
+    "Yewgravel",
+    "Zephyrsedge",
+)
 REMARKS = (
-    "", "", "", "", "seen by night team", "family informed", "moved; bed 4 to bed 9", 'called it "a quiet night"',
-    "lines changed, both sides", "notes on paper", "=see old chart", "tall; long cannula", "rhythm watched\nno change",
-    "Übergabe ohne Befund", "letter sent – copy filed",
-)  # fmt: skip
+    "",
+    "",
+    "",
+    "",
+    "seen by night team",
+    "family informed",
+    "moved; bed 4 to bed 9",
+    'called it "a quiet night"',
+    "lines changed, both sides",
+    "notes on paper",
+    "=see old chart",
+    "tall; long cannula",
+    "rhythm watched\nno change",
+    "Übergabe ohne Befund",
+    "letter sent – copy filed",
+)
 
 
 def person_names(rng: np.random.Generator, n: int) -> tuple[list[str], list[str]]:
@@ -54,7 +111,10 @@ def record_numbers(rng: np.random.Generator, n: int) -> list[str]:
 
 def phones(rng: np.random.Generator, n: int) -> list[str]:
     """Telephone numbers that cannot exist: the country code is 000."""
-    return [f"+000 {a:03d} {b:04d}" for a, b in zip(rng.integers(0, 1000, n), rng.integers(0, 10_000, n), strict=True)]
+    return [
+        f"+000 {a:03d} {b:04d}"
+        for a, b in zip(rng.integers(0, 1000, n), rng.integers(0, 10_000, n), strict=True)
+    ]
 
 
 def remarks(rng: np.random.Generator, n: int) -> list[str]:

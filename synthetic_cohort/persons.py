@@ -6,6 +6,7 @@ import numpy as np
 import pandas as pd
 
 from synthetic_cohort.clock import stream
+from synthetic_cohort.given import given
 from synthetic_cohort.hazards import Array, Index
 from synthetic_cohort.mixture import AGE_RANGE, age_moments, share_arrest
 from synthetic_cohort.names import person_names, phones, record_numbers
@@ -16,7 +17,7 @@ LEG_CANNULA = 0.55
 
 
 def draw_persons(n: int, seed: int, settings: Settings) -> pd.DataFrame:
-    """n candidates, one row each: group, z, age_exact, sex, height, body mass index, arrest, hazard_group ..."""
+    """n candidates, one row each: indication, severity, age, sex, size, arrest, hazard group, cannulation."""
     rng = stream(seed, "persons")
     group = rng.choice(len(GROUPS), size=n, p=[g.share for g in GROUPS])
     z = rng.standard_normal(n)
@@ -49,7 +50,7 @@ def _ages(rng: np.random.Generator, group: Index, z: Array, settings: Settings) 
 
 
 def _add_arrest(people: pd.DataFrame, rng: np.random.Generator, settings: Settings) -> None:
-    """Arrest, its place, and whether the pump was started during compressions; from these the hazard group."""
+    """Arrest, its place, pump start during compressions; from these the hazard group and the cannulation."""
     n = len(people)
     group = people["group"].to_numpy()
     chance = np.empty(n)
@@ -62,12 +63,14 @@ def _add_arrest(people: pd.DataFrame, rng: np.random.Generator, settings: Settin
     people["had_arrest"], people["is_ecpr"] = arrest, ecpr
     emergency = rng.random(n) < 0.05
     place = np.where(out, "out_of_hospital", np.where(emergency, "emergency_department", "in_hospital"))
-    people["arrest_location"] = np.where(arrest, place, None)
+    people["arrest_location"] = given(arrest, place)
     people["hazard_group"] = np.where(ecpr, len(GROUPS) + out.astype(int), group)
     femoral = np.where(ecpr, 0.95, np.array([g.femoral for g in GROUPS])[group])
     draw = rng.random(n)
     rest = np.where(group == 2, "central", "axillary")
-    people["arterial_return"] = np.where(draw < femoral, "femoral", np.where(rng.random(n) < 0.8, rest, "central"))
+    people["arterial_return"] = np.where(
+        draw < femoral, "femoral", np.where(rng.random(n) < 0.8, rest, "central")
+    )
     people["leg_cannula"] = (people["arterial_return"] == "femoral") & (rng.random(n) < LEG_CANNULA)
 
 
@@ -82,5 +85,8 @@ def add_identity(people: pd.DataFrame, seed: int) -> pd.DataFrame:
     rng = stream(seed, "identity")
     first, last = person_names(rng, len(people))
     return people.assign(
-        first_name=first, last_name=last, record_number=record_numbers(rng, len(people)), phone=phones(rng, len(people))
+        first_name=first,
+        last_name=last,
+        record_number=record_numbers(rng, len(people)),
+        phone=phones(rng, len(people)),
     )

@@ -1,4 +1,5 @@
-"""The state of one planting: which runs are taken, what was planted in which row, and on which line that ended up."""
+"""The state of one planting: which runs are taken, what was planted in which row, and on which line that
+ended up."""
 
 from __future__ import annotations
 
@@ -15,8 +16,8 @@ from synthetic_cohort.sheets import Cell, Row, Sheet, Tables
 class Defect:
     """One planted defect, or one place of it.
 
-    line: physical line (from 1) in the file or sheet as written. column: header, "" if the whole row is meant.
-    scope: what can no longer be used: "cell", "row" or "run". run: the run's identifier as written.
+    line: physical line (from 1) in the file or sheet as written. column: header, "" if the whole row is
+    meant. scope: what can no longer be used: "cell", "row" or "run". run: the run's identifier as written.
     """
 
     file: str
@@ -47,12 +48,17 @@ class Planter:
         return flat.iloc[int(np.searchsorted(flat["run_no"].to_numpy(), row.run_no))]
 
     def pick(self, suits: pd.Series, sheet: Sheet | None = None, *roles: str) -> Row | None:
-        """A row of an untouched run for which `suits` (aligned to the flat frame) holds and the roles are filled."""
+        """A row of an untouched run for which `suits` (aligned to the flat frame) holds and the roles are
+        filled."""
         flat = self.tables.flat
         alone = flat.groupby("person_no")["run_no"].transform("size") == 1
         allowed = set(flat.loc[suits & alone, "run_no"]) - self.used
         sheet = sheet or self.runs
-        rows = [r for r in sheet.rows if r.run_no in allowed and all(self._filled(sheet, r, role) for role in roles)]
+        rows = [
+            r
+            for r in sheet.rows
+            if r.run_no in allowed and all(self._filled(sheet, r, role) for role in roles)
+        ]
         if not rows:
             return None
         row = rows[int(self.rng.integers(len(rows)))]
@@ -60,7 +66,9 @@ class Planter:
         return row
 
     def _filled(self, sheet: Sheet, row: Row, role: str) -> bool:
-        return role in sheet.roles and all(row.cells[sheet.place(h)] not in (None, "") for h in sheet.roles[role])
+        return role in sheet.roles and all(
+            row.cells[sheet.place(h)] not in (None, "") for h in sheet.roles[role]
+        )
 
     def any_run(self) -> pd.Series:
         return pd.Series(True, index=self.tables.flat.index)
@@ -75,7 +83,9 @@ class Planter:
 
     def truth(self) -> list[Defect]:
         """Everything planted with its final line, in the order of files, sheets and lines."""
-        lines = {id(s): {id(r): n for r, n in zip(s.rows, s.lines(), strict=True)} for s in self.tables.sheets}
+        lines = {
+            id(s): {id(r): n for r, n in zip(s.rows, s.lines(), strict=True)} for s in self.tables.sheets
+        }
         out = []
         for kind, sheet, row, column, scope in self.found:
             run = str(sheet.get(row, "run"))

@@ -1,4 +1,5 @@
-"""Exports as sheets of cells before they are written: who planted what where stays known until the line numbers are."""
+"""Exports as sheets of cells before they are written: who planted what where stays known until the line
+numbers are."""
 
 from __future__ import annotations
 
@@ -25,7 +26,7 @@ class Row:
 
 @dataclass
 class Sheet:
-    """titles: rows above the header. roles: what a column means -> its headers, for the planter of defects."""
+    """titles: rows above the header. roles: what a column means -> its headers, for planting."""
 
     file: str
     name: str
@@ -39,7 +40,8 @@ class Sheet:
         return self.file.endswith(".csv")
 
     def lines(self) -> list[int]:
-        """Physical line (from 1) on which each row begins; in a CSV a line break inside a cell makes a row longer."""
+        """Physical line (from 1) on which each row begins; in a CSV a line break inside a cell makes a row
+        longer."""
         line = len(self.titles) + 2
         lines = []
         for row in self.rows:
@@ -64,10 +66,10 @@ class Sheet:
 class Form:
     """How a style writes things, for the planter.
 
-    patterns: role -> one strftime pattern for each of its headers, None for a typed date cell, "%Y" for a typed year;
-    the key "" holds the usual pattern. decimal_mark: None where numbers are typed. words: key -> the style's word.
-    slips: role -> (factor to the unit that a hurried hand would use, lowest and highest value that the written unit
-    allows).
+    patterns: role -> one strftime pattern for each of its headers, None for a typed date cell, "%Y" for a
+    typed year; the key "" holds the usual pattern. decimal_mark: None where numbers are typed. words: key ->
+    the style's word. slips: role -> (factor to the unit that a hurried hand would use, lowest and highest
+    value that the written unit allows).
     """
 
     patterns: dict[str, tuple[str | None, ...]]
@@ -124,8 +126,13 @@ Column = tuple[str, str, Sequence[Cell]]
 """Header, role ('' for none), cells."""
 
 
-def build_sheet(file: str, name: str, columns: Sequence[Column], run_no: Sequence[int],
-                titles: list[list[Cell]] | None = None) -> Sheet:  # fmt: skip
+def build_sheet(
+    file: str,
+    name: str,
+    columns: Sequence[Column],
+    run_no: Sequence[int],
+    titles: list[list[Cell]] | None = None,
+) -> Sheet:
     """A sheet of columns of equal length. Several columns of one role are kept in order."""
     roles: dict[str, tuple[str, ...]] = {}
     for header, role, _ in columns:
@@ -136,10 +143,23 @@ def build_sheet(file: str, name: str, columns: Sequence[Column], run_no: Sequenc
 
 
 def flat_frame(cohort: Cohort) -> pd.DataFrame:
-    """One row a run with everything of one-row-a-run frames side by side, and moments as wall-clock time (*_at)."""
+    """One row a run with everything of one-row-a-run frames side by side, and moments as wall-clock time
+    (*_at)."""
     person = cohort.person.drop(columns=["sex", "height_cm", "weight_kg", "birth_date", "frailty"])
-    run = cohort.run.drop(columns=["sex", "height_cm", "weight_kg", "end_h", "left_h", "left_alive", "death_h", "arrest_location",
-                                   "had_arrest", "age_years"])  # fmt: skip
+    run = cohort.run.drop(
+        columns=[
+            "sex",
+            "height_cm",
+            "weight_kg",
+            "end_h",
+            "left_h",
+            "left_alive",
+            "death_h",
+            "arrest_location",
+            "had_arrest",
+            "age_years",
+        ]
+    )
     flat = run.merge(person, on="person_no", how="left", validate="many_to_one")
     ending = cohort.ending.drop(columns=["true_end_kind", "entry_h"])
     for frame in (ending, cohort.recorded, cohort.follow_up, cohort.neuro):
@@ -147,10 +167,15 @@ def flat_frame(cohort: Cohort) -> pd.DataFrame:
     flat["cpc_recorded"] = flat["cpc"].where(flat["is_recorded"].eq(True))
     flat["mrs_recorded"] = flat["mrs"].where(flat["is_recorded"].eq(True))
     hours = {
-        "end_at": flat["end_h"], "discharge_at": flat["discharge_h"], "contact_at": flat["contact_h"],
-        "register_death_at": flat["register_death_h"], "arrival_at": flat["entry_h"].where(flat["transferred_in"]),
-        "decision_at": flat["decision_h"], "intubated_at": -flat["intubation_hours"], "arrest_at": flat["arrest_onset_h"],
-    }  # fmt: skip
+        "end_at": flat["end_h"],
+        "discharge_at": flat["discharge_h"],
+        "contact_at": flat["contact_h"],
+        "register_death_at": flat["register_death_h"],
+        "arrival_at": flat["entry_h"].where(flat["transferred_in"]),
+        "decision_at": flat["decision_h"],
+        "intubated_at": -flat["intubation_hours"],
+        "arrest_at": flat["arrest_onset_h"],
+    }
     for name, h in hours.items():
         flat[name] = wall(cohort, flat["start_utc"], h)
     return flat
@@ -180,8 +205,12 @@ def coded(values: Sequence[object] | pd.Series, codes: dict[object, Cell], empty
     return [empty if pd.isna(v) else codes[bool(v) if isinstance(v, np.bool_) else v] for v in values]
 
 
-def with_tokens(cells: Sequence[Cell], rng: np.random.Generator, tokens: Sequence[str], share: float = 0.3) -> list[Cell]:
+def with_tokens(
+    cells: Sequence[Cell], rng: np.random.Generator, tokens: Sequence[str], share: float = 0.3
+) -> list[Cell]:
     """Some of the empty cells say in a word that they are empty."""
     draw = rng.random(len(cells))
     pick = rng.integers(0, len(tokens), len(cells))
-    return [tokens[p] if c in ("", None) and d < share else c for c, d, p in zip(cells, draw, pick, strict=True)]
+    return [
+        tokens[p] if c in ("", None) and d < share else c for c, d, p in zip(cells, draw, pick, strict=True)
+    ]

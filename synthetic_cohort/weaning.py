@@ -31,16 +31,21 @@ def weaning_frame(run: pd.DataFrame, ending: pd.DataFrame, twice: TwiceHours, se
     low = np.tile(np.arange(len(FLOWS)), len(studies)) / (len(FLOWS) - 1)
     good = steps["passed"].to_numpy()
     gain = np.where(good, 1.0, 0.35) * low
-    out = pd.DataFrame({
-        "run_no": run["run_no"].to_numpy()[steps["row"]], "study_h": steps["study_h"],
-        "flow_l_min": np.tile(FLOWS, len(studies)),
-        "map_mmhg": np.round(np.clip(72.0 - np.where(good, 2.0, 12.0) * low + rng.normal(0, 6, n), 40, 120)),
-        "cvp_mmhg": np.round(np.clip(9.0 + np.where(good, 2.0, 6.0) * low + rng.normal(0, 2, n), 1, 28)),
-        "lvef_percent": np.round(np.clip(19.0 + 11.0 * gain + rng.normal(0, 4, n), 5, 60)),
-        "lvot_vti_cm": np.round(np.clip(7.5 + 5.0 * gain + rng.normal(0, 1.2, n), 2, 24), 1),
-        "lateral_s_prime_cm_s": np.round(np.clip(4.2 + 3.0 * gain + rng.normal(0, 0.8, n), 2, 14), 1),
-        "result": np.where(good, "passed", "failed"),
-    })  # fmt: skip
+    out = pd.DataFrame(
+        {
+            "run_no": run["run_no"].to_numpy()[steps["row"]],
+            "study_h": steps["study_h"],
+            "flow_l_min": np.tile(FLOWS, len(studies)),
+            "map_mmhg": np.round(
+                np.clip(72.0 - np.where(good, 2.0, 12.0) * low + rng.normal(0, 6, n), 40, 120)
+            ),
+            "cvp_mmhg": np.round(np.clip(9.0 + np.where(good, 2.0, 6.0) * low + rng.normal(0, 2, n), 1, 28)),
+            "lvef_percent": np.round(np.clip(19.0 + 11.0 * gain + rng.normal(0, 4, n), 5, 60)),
+            "lvot_vti_cm": np.round(np.clip(7.5 + 5.0 * gain + rng.normal(0, 1.2, n), 2, 24), 1),
+            "lateral_s_prime_cm_s": np.round(np.clip(4.2 + 3.0 * gain + rng.normal(0, 0.8, n), 2, 14), 1),
+            "result": np.where(good, "passed", "failed"),
+        }
+    )
     order = out.assign(step=-out["flow_l_min"]).sort_values(["run_no", "study_h", "step"], kind="stable")
     return order.drop(columns="step").reset_index(drop=True)
 
@@ -54,6 +59,8 @@ def configuration_frame(run: pd.DataFrame, ending: pd.DataFrame, complication: p
     change = run["run_no"].map(lack).to_numpy(dtype=float) + 0.5
     end, seen = ending["end_h"].to_numpy(dtype=float), ending["observed_h"].to_numpy(dtype=float)
     changes = change < seen - 1.0
-    first = pd.DataFrame({"run_no": run["run_no"], "config": "va", "from_h": 0.0, "to_h": np.where(changes, change, end)})
+    first = pd.DataFrame(
+        {"run_no": run["run_no"], "config": "va", "from_h": 0.0, "to_h": np.where(changes, change, end)}
+    )
     then = pd.DataFrame({"run_no": run["run_no"], "config": "vav", "from_h": change, "to_h": end})[changes]
     return pd.concat([first, then]).sort_values(["run_no", "from_h"]).reset_index(drop=True)

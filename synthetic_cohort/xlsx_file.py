@@ -10,9 +10,9 @@ from datetime import datetime
 from pathlib import Path
 
 from openpyxl import Workbook
-from openpyxl.cell import Cell as XlsxCell
+from openpyxl.cell import Cell as BookCell
 
-from synthetic_cohort.sheets import Sheet
+from synthetic_cohort.sheets import Cell, Sheet
 
 _STAMP = datetime(2000, 1, 1)
 _STAMP_TEXT = "2000-01-01T00:00:00Z"
@@ -20,13 +20,14 @@ _MOMENT = "yyyy-mm-dd hh:mm"
 
 
 def workbook_bytes(sheets: Sequence[Sheet]) -> bytes:
-    """The workbook. Dates are typed cells, words that begin with # are spreadsheet errors, text never is a formula."""
+    """The workbook. Dates are typed cells, words that begin with # are spreadsheet errors, text never is a
+    formula."""
     book = Workbook()
     book.remove(book.active)
     book.properties.created = book.properties.modified = _STAMP
     for sheet in sheets:
         page = book.create_sheet(sheet.name)
-        rows = [*sheet.titles, list(sheet.header), *(r.cells for r in sheet.rows)]
+        rows: list[list[Cell]] = [*sheet.titles, [*sheet.header], *(r.cells for r in sheet.rows)]
         for i, cells in enumerate(rows, start=1):
             for j, value in enumerate(cells, start=1):
                 if value is not None and value != "":
@@ -36,7 +37,7 @@ def workbook_bytes(sheets: Sequence[Sheet]) -> bytes:
     return _with_fixed_dates(buffer.getvalue())
 
 
-def _set(cell: XlsxCell, value: object) -> None:
+def _set(cell: BookCell, value: Cell) -> None:
     cell.value = value
     if isinstance(value, datetime):
         cell.number_format = _MOMENT
@@ -51,7 +52,9 @@ def _with_fixed_dates(data: bytes) -> bytes:
         for name in sorted(old.namelist(), key=lambda n: (n != "[Content_Types].xml", n)):
             content = old.read(name)
             if name == "docProps/core.xml":
-                content = re.sub(rb"(<dcterms:(?:created|modified)[^>]*>)[^<]*", rb"\g<1>" + _STAMP_TEXT.encode(), content)
+                content = re.sub(
+                    rb"(<dcterms:(?:created|modified)[^>]*>)[^<]*", rb"\g<1>" + _STAMP_TEXT.encode(), content
+                )
             info = zipfile.ZipInfo(name, date_time=(2000, 1, 1, 0, 0, 0))
             info.compress_type = zipfile.ZIP_DEFLATED
             new.writestr(info, content)
