@@ -71,14 +71,14 @@ def horizon_table(cohort: Cohort, people: pd.DataFrame) -> tuple[pd.DataFrame, t
 def _at(could: pd.DataFrame, day: float, aside: int) -> dict[str, object]:
     if could.empty:
         raise NotEstimable("no_runs", "Nobody could have been followed so far.")
-    point = survival_at(curve_of(could), day)
+    point = survival_at(curve_of(could, days=[day]), day)
     row = {k: point.table.iloc[0][k] for k in ("estimate", "lower", "upper", "at_risk", "reason")}
     if pd.isna(row["reason"]) or row["reason"] == "":
         row.pop("reason")
     time = could["time_h"].to_numpy(dtype=float)
     row["events"] = int((could["died"].to_numpy(dtype=bool) & (time <= day * DAY)).sum())
     if pd.notna(row["estimate"]):
-        low = survival_at(curve_of(could, "time_low_h"), day).table.iloc[0]["estimate"]
+        low = survival_at(curve_of(could, "time_low_h", [day]), day).table.iloc[0]["estimate"]
         n = len(could)
         row |= {"low_news": low, "high_news": row["estimate"], "worst": row["estimate"] * n / (n + aside),
                 "best": (row["estimate"] * n + aside) / (n + aside)}  # fmt: skip
