@@ -124,7 +124,7 @@ def modifiers(kind: Kind, runs: Supported, settings: Settings) -> tuple[Array, A
 def draw_onsets(
     rng: np.random.Generator, kind: Kind, runs: Supported, settings: Settings
 ) -> tuple[Index, Array]:
-    """Row of the run and onset of every episode of one kind under observation; in no order."""
+    """Row of the run and onset of each episode of one kind under observation; in no order."""
     hazard = band_hazards()[KIND_KEYS.index(kind.key)]
     early, late = modifiers(kind, runs, settings)
     rows, onset = _recurrent(rng, kind, hazard, early * runs.frailty, late * runs.frailty, runs.to_h)
@@ -132,11 +132,14 @@ def draw_onsets(
     rows, onset = np.concatenate([rows, more_rows]), np.concatenate([onset, more_onset])
     keep = (onset > runs.from_h[rows]) & (onset < runs.to_h[rows])
     rows, onset = rows[keep], onset[keep]
-    if kind.once and kind.at_end > 0:
+    if kind.at_end > 0:
+        # What happens at handling may come too soon: the same episode, or a second of a kind that comes once.
         order = np.lexsort((onset, rows))
         rows, onset = rows[order], onset[order]
-        first = np.concatenate([[True], rows[1:] != rows[:-1]]) if len(rows) else np.zeros(0, dtype=bool)
-        rows, onset = rows[first], onset[first]
+        gap = np.inf if kind.once else kind.gap_h
+        again = (rows[1:] == rows[:-1]) & (np.diff(onset) < gap)
+        apart = np.concatenate([np.ones(min(1, len(rows)), dtype=bool), ~again])
+        rows, onset = rows[apart], onset[apart]
     return rows, onset
 
 
