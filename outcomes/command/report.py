@@ -68,7 +68,7 @@ def make_report(args: argparse.Namespace) -> Report:
         con.close()
     audit = make_audit(cohort, years=_years(args.years), sources=tuple(args.source), score_checks=tuple(args.score_checked))
     given = provenance(audit.whole, kind=f"{args.kind}, profile {args.profile}", options=_options(args, audit), made_on=_date(args.date))
-    return assemble(REPORTS[args.kind], analyses(), audit, Options(profile=args.profile, provenance=given))
+    return assemble(REPORTS[args.kind], analyses(), audit, Options(profile=args.profile, title=f"Annual audit of veno-arterial ECMO support runs begun {audit.label}", provenance=given))
 
 
 def _options(args: argparse.Namespace, audit: Audit) -> list[str]:

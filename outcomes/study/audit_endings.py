@@ -117,7 +117,7 @@ def _count_table(counts: Result, lists: dict[str, object]) -> TableOf:
 
 def _at_table(result: str, caption: str, days: list[float]) -> TableOf:
     names = dict(ENDINGS) | ({"transfer out": "transferred out"} if result == "apart" else {}) | {"still supported": "still supported"}
-    columns = [ColumnOf("at_risk", "At risk", "count", ("at_risk",), {"cause": "still supported"})]
+    columns = [ColumnOf("day", "Day", "time", ("time",), {"cause": "still supported"}), ColumnOf("at_risk", "At risk", "count", ("at_risk",), {"cause": "still supported"})]
     for name, label in names.items():
         columns.append(ColumnOf(slug(name), label, "percent", ("estimate", "n"), {"cause": name}))
         columns.append(ColumnOf(f"{slug(name)}_ci", "", "percent_interval", ("lower", "upper", "n"), {"cause": name}, over=""))

@@ -49,8 +49,7 @@ def overview(audit: Audit) -> Answer:
     return Answer(
         results, tables,
         facts={
-            "compared": bool(before), "years": audit.label, "years_before": audit.label_before,
-            "change": _change(results.get("difference")), "open": bool((run["end_kind"] == "open").any()),
+            "compared": bool(before), "change": _change(results.get("difference")), "open": bool((run["end_kind"] == "open").any()),
         },
         lists={"summary_runs": run_list("Runs of the period", run["run_key"])},
     )  # fmt: skip

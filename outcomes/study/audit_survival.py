@@ -95,6 +95,7 @@ def _left_out(cohort: Cohort) -> int:
 
 def _at_columns(news: bool) -> tuple[ColumnOf, ...]:
     columns = [
+        ColumnOf("day", "Day", "time", ("time",)),
         ColumnOf("persons", "People", "count", ("persons",)),
         ColumnOf("deaths", "Died", "count", ("events",)),
         ColumnOf("at_risk", "At risk then", "count", ("at_risk",)),
@@ -105,7 +106,7 @@ def _at_columns(news: bool) -> tuple[ColumnOf, ...]:
         ColumnOf("not_yet", "Not yet so long ago", "count", ("not_yet",)),
     ]
     if news:
-        columns.insert(6, ColumnOf("news", "Deaths at the last day known alive, or at the news", "percent_interval", ("low_news", "high_news", "persons")))
+        columns.insert(7, ColumnOf("news", "Deaths at the last day known alive, or at the news", "percent_interval", ("low_news", "high_news", "persons")))
     return tuple(columns)
 
 
