@@ -88,9 +88,19 @@ def test_units_below_the_header():
 
 @pytest.mark.parametrize(
     "line",
-    ["Total,320,,", "Summe:,12,34,5.5", "grand total,,,", "Mean,1,2,3", "320 rows,,,", "End of report,,,",
-     "Runs of 2021,,,", "Total,320", "Printed by night shift", "Sum,1,2,3,4"],
-)  # fmt: skip
+    [
+        "Total,320,,",
+        "Summe:,12,34,5.5",
+        "grand total,,,",
+        "Mean,1,2,3",
+        "320 rows,,,",
+        "End of report,,,",
+        "Runs of 2021,,,",
+        "Total,320",
+        "Printed by night shift",
+        "Sum,1,2,3,4",
+    ],
+)
 def test_totals_and_footers(line):
     assert places(f"run,kg,cm,h\n1,2,3,4\n{line}\n") == [("TOTALS-ROW", 3, "")]
 
@@ -101,9 +111,14 @@ def test_totals_at_a_cut_end_keep_their_name():
 
 @pytest.mark.parametrize(
     "data",
-    ["run,kg,cm\nTotal,artificial,heart\n", "run,kg,cm\nF-0001,,\n", "code,meaning\nn,0\n", "code,meaning\nmean,1\n",
-     "code,meaning\nlate stroke,\n"],
-)  # fmt: skip
+    [
+        "run,kg,cm\nTotal,artificial,heart\n",
+        "run,kg,cm\nF-0001,,\n",
+        "code,meaning\nn,0\n",
+        "code,meaning\nmean,1\n",
+        "code,meaning\nlate stroke,\n",
+    ],
+)
 def test_not_totals(data):
     assert len(rows(data)) == 1
 

@@ -84,10 +84,10 @@ def test_encodings(encoding, declared):
 
 
 def test_utf16_beyond_a_block_and_with_the_byte_of_a_line_feed():
-    text = "\u010a\u0a0a,b\n" + "\u0a0a\u010a\u4e00,x\n" * 20_000
+    text = "\u010a\u0a0a,b\n" + "\u010a\u0a0a\u4e00,x\n" * 20_000
     grid = grids(text.encode("utf-16"), encoding="utf-16")[0]
     assert grid.header == ("\u010a\u0a0a", "b")
-    assert len(grid.lines) == 20_000 and set(grid.cells[0]) == {"\u0a0a\u010a\u4e00"}
+    assert len(grid.lines) == 20_000 and set(grid.cells[0]) == {"\u010a\u0a0a\u4e00"}
 
 
 def test_utf16_is_noted_when_only_the_mark_says_so():

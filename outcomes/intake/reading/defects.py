@@ -46,6 +46,11 @@ class Defects:
         self.add(code, line, column, detail=detail, shape=shape)
         return Fatal(code)
 
+    @staticmethod
+    def fatal_again() -> Fatal:
+        """After defects that are listed already, and after which nothing can be read."""
+        return Fatal()
+
     def note(self, code: str, line: int = 0, column: int = 0, *, detail: str = "") -> None:
         """List something that was accepted."""
         rule = NOTES[code] + (f": {detail}" if detail else "")

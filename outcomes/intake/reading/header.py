@@ -23,10 +23,8 @@ def fold(header: str) -> str:
 def judge_header(row: Row | None, line: int, separator: str, defects: Defects) -> tuple[str, ...]:
     """Headers of all columns, '' where there is none. separator: '' if the file has none. Raises Fatal if the
     line cannot be a header at all; lists twins and overlong headers."""
-    if row is None or row.line > line:
-        raise defects.fatal(
-            "READ.HEADER-LINE", line, detail="the table ends before this line or the line is blank"
-        )
+    if row is None:
+        raise defects.fatal("READ.HEADER-LINE", line, detail="the table ends before this line")
     if is_blank(row.cells):
         raise defects.fatal("READ.HEADER-LINE", line, detail="the line is blank")
     names = tuple(unicodedata.normalize("NFC", text_of(cell)).strip() for cell in row.cells)

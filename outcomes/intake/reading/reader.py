@@ -15,13 +15,17 @@ from typing import BinaryIO
 
 from outcomes.errors import UsageError
 from outcomes.findings import Finding
+from outcomes.intake.reading.columnar import Columnar
 from outcomes.intake.reading.defects import Defects, Fatal
 from outcomes.intake.reading.delimited import Delimited
 from outcomes.intake.reading.grid import FileSpec, Grid, Row, SheetSpec
 from outcomes.intake.reading.limits import CHUNK_CHARS, KEPT_CELLS
+from outcomes.intake.reading.package import Package
 from outcomes.intake.reading.rewind import rewindable
 from outcomes.intake.reading.sniff import WORDS, kind_of
 from outcomes.intake.reading.table import Source, Table
+from outcomes.intake.reading.workbook import Workbook
+from outcomes.intake.reading.worksheet import Worksheet
 
 KINDS = ("csv", "xlsx", "parquet")
 _BYTES_OF = {"csv": "text", "xlsx": "zip", "parquet": "parquet"}
@@ -91,7 +95,17 @@ def _sources(data: bytes | BinaryIO, spec: FileSpec, defects: Defects) -> list[t
     if kind != _BYTES_OF[spec.kind]:
         raise defects.fatal("READ.KIND", detail=f"it is {WORDS[kind]}, declared is {spec.kind}")
     sheets = spec.sheets or (SheetSpec(),)
+    if spec.kind == "xlsx":
+        workbook = Workbook(Package(stream, defects), defects)
+        return [(sheet, _worksheet(workbook, sheet, defects)) for sheet in sheets]
+    if spec.kind == "parquet":
+        return [(sheet, Columnar(stream, sheet, spec.max_rows, defects)) for sheet in sheets]
     return [(sheet, Delimited(stream, spec, sheet)) for sheet in sheets]
+
+
+def _worksheet(workbook: Workbook, sheet: SheetSpec, defects: Defects) -> Source:
+    defects.sheet = sheet.key
+    return Worksheet(workbook, sheet, defects)
 
 
 def _survey(data: bytes | BinaryIO, spec: FileSpec, defects: Defects) -> list[_Survey]:

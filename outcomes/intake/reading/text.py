@@ -28,7 +28,7 @@ _BAD = re.compile(
     "(?P<nul>\x00)"
     "|(?P<bidi>[\u061c\u200e\u200f\u202a-\u202e\u2066-\u2069])"
     "|(?P<invisible>[\u200b\u2060-\u2064\ufeff\ufff9-\ufffb\U000e0000-\U000e007f])"
-    "|(?P<control>[\x01-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\u2028\u2029\ufffe\uffff])"
+    "|(?P<control>[\x01-\x08\x0b\x0c\x0e-\x1f\x7f-\x9f\u2028\u2029\ud800-\udfff\ufffe\uffff])"
     "|(?P<replaced>\ufffd)"
 )
 _CODE = {"nul": "READ.NUL", "bidi": "READ.BIDI", "invisible": "READ.INVISIBLE", "control": "READ.CONTROL"}
