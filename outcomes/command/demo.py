@@ -23,7 +23,7 @@ from outcomes.findings import Finding
 from outcomes.store.importing import Request, run_import
 from outcomes.store.recover import Places
 from synthetic_cohort import generate, write_export
-from synthetic_cohort.defects import KINDS
+from synthetic_cohort.defects import DEFECT_KINDS
 
 SEED = 20
 LISTED = 6
@@ -45,7 +45,7 @@ def run(args: argparse.Namespace) -> int:
     keys = _keys(SEED)
     for number, style in enumerate(("north", "south")):
         cohort = generate(args.runs, SEED + number, start_year=2021, years=4)
-        export = write_export(cohort, style, folder, SEED + number, sorted(KINDS))
+        export = write_export(cohort, style, folder, SEED + number, DEFECT_KINDS)
         _import(style, export.mapping, list(export.paths), store, keys)
     _report(folder, store)
     return 0

@@ -17,7 +17,7 @@ from pathlib import Path
 from outcomes.command import _shared as shared
 from outcomes.errors import UsageError
 from synthetic_cohort import STYLES, generate, write_export
-from synthetic_cohort.defects import KINDS
+from synthetic_cohort.defects import DEFECT_KINDS
 
 
 def arguments(parser: argparse.ArgumentParser) -> None:
@@ -37,7 +37,7 @@ def run(args: argparse.Namespace) -> int:
     if not 1 <= args.runs <= 100_000 or not 1 <= args.years <= 40 or not 1990 <= args.start_year <= 2100:
         raise UsageError("USAGE.ARGUMENTS", "1 to 100000 runs, 1 to 40 years, from 1990 on")
     cohort = generate(args.runs, args.seed, start_year=args.start_year, years=args.years)
-    export = write_export(cohort, args.style, folder, args.seed, sorted(KINDS) if args.defects else ())
+    export = write_export(cohort, args.style, folder, args.seed, DEFECT_KINDS if args.defects else ())
     if args.defects:
         truth = [asdict(d) for d in export.defects]
         shared.write_output(folder / f"{args.style}-planted.json", (json.dumps(truth, indent=1, sort_keys=True, default=str) + "\n").encode())

@@ -39,16 +39,27 @@ def key_text(cell: Cell) -> str:
 
 def run_numbers(grid: Grid, sheet: Sheet, places: dict[str, int], numbers: RunNumbers) -> list[int | None]:
     """Run number of every row; None where the key is empty or damaged."""
-    runs = _joined(grid, sheet.run, places)
-    persons = _joined(grid, sheet.person, places) if sheet.person else [None] * len(runs)
-    if sheet.row_is == "run" and not sheet.person:
-        persons = [None] * len(runs)
+    persons = _joined(grid, sheet.person, places) if sheet.person else [None] * len(grid.lines)
+    runs = _joined(grid, sheet.run, places) if sheet.run else _attempts(persons, numbers)
     found: list[int | None] = []
     for run, person in zip(runs, persons, strict=True):
         if run is None or (sheet.person and person is None):
             found.append(None)
         else:
             found.append(numbers.number(run, person))
+    return found
+
+
+def _attempts(persons: Sequence[str | None], numbers: RunNumbers) -> list[str | None]:
+    """Keys of attempts that have no number of their own: the person and which of their attempts it is."""
+    found: list[str | None] = []
+    for person in persons:
+        if person is None:
+            found.append(None)
+            continue
+        number = numbers.attempts.get(person, 0) + 1
+        numbers.attempts[person] = number
+        found.append(SEPARATOR.join(("attempt", person, str(number))))
     return found
 
 

@@ -51,6 +51,7 @@ class RunNumbers:
     number_of: dict[str, int] = field(default_factory=dict)
     run_keys: list[str] = field(default_factory=list)
     person_keys: list[str | None] = field(default_factory=list)
+    attempts: dict[str, int] = field(default_factory=dict)
 
     def __repr__(self) -> str:
         return f"RunNumbers({len(self.run_keys)} runs)"
