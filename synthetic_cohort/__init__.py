@@ -1,5 +1,4 @@
-"""A made-up programme of veno-arterial ECMO support with known truth, and messy exports of it with planted
-defects.
+"""A made-up programme of veno-arterial ECMO support with known truth, and messy exports of it.
 
 Nothing here knows the product: numpy, pandas, the standard library and, to write workbooks, openpyxl.
 

@@ -26,8 +26,7 @@ _CAUSES = ("cardiac", "multiorgan_failure", "neurological", "bleeding", "infecti
 
 
 def ending_frame(run: pd.DataFrame, cutoff: pd.Timestamp, seed: int) -> pd.DataFrame:
-    """One row a run. end_kind 'open' and no end_h if support ran at the extract; true_* hold what really
-    came.
+    """One row a run. end_kind 'open' and no end_h if support ran at the extract; true_* hold what came.
 
     observed_h: hours at the end of observation of support; support is watched from entry_h to there.
     """
@@ -49,6 +48,14 @@ def ending_frame(run: pd.DataFrame, cutoff: pd.Timestamp, seed: int) -> pd.DataF
     out["observed_h"] = np.where(is_open, cut_h, run["end_h"])
     planned = (kind != "death") & (rng.random(n) < 0.92)
     out["end_planned"] = given(~is_open, planned)
+    _add_ways_out(out, rng)
+    return out
+
+
+def _add_ways_out(out: pd.DataFrame, rng: np.random.Generator) -> None:
+    """How the cannulae came out, what device stayed, why support was stopped, what death was of; in place."""
+    n = len(out)
+    is_open = out["end_kind"].eq("open").to_numpy()
     weaned = (out["end_kind"] == "recovery").to_numpy()
     place = np.array(["theatre", "icu_bedside", "cathlab"])[
         (rng.random(n)[:, None] > [0.6, 0.85]).sum(axis=1)
@@ -70,7 +77,6 @@ def ending_frame(run: pd.DataFrame, cutoff: pd.Timestamp, seed: int) -> pd.DataF
     out["death_cause_group"] = given(
         out["end_kind"] == "death", rng.choice(_CAUSES, n, p=[0.4, 0.3, 0.12, 0.1, 0.05, 0.03])
     )
-    return out
 
 
 def follow_up_frame(
@@ -137,8 +143,7 @@ def _add_contacts(
 
 
 def neuro_frame(run: pd.DataFrame, follow_up: pd.DataFrame, seed: int, settings: Settings) -> pd.DataFrame:
-    """One row a run that left hospital alive: cerebral performance category (1 to 4) and modified Rankin
-    grade.
+    """One row a run that left hospital alive: cerebral performance category and modified Rankin grade.
 
     is_recorded is off for a fifth of them, more often for the good ones.
     """

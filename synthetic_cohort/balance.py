@@ -23,8 +23,7 @@ from synthetic_cohort.settings import HAZARD_GROUPS, Settings
 
 @lru_cache(maxsize=16)
 def balanced_hazards(settings: Settings) -> Array:
-    """`group_hazards` with the two constants of each group (death, recovery) that undo the mean effect of
-    severity.
+    """`group_hazards` with two constants a group (death, recovery) that undo the mean effect of severity.
 
     Found by Newton's method on: proportion that dies on support, and proportion still on support on day 4.
     """
@@ -52,8 +51,7 @@ def _with_constants(hazards: Array, logs: Array) -> Array:
 
 
 def _landmarks(hazards: Array, settings: Settings, logs: Array) -> Array:
-    """(group, 2): death or withdrawal in the end, still on support on day 4; averaged over severity, no age
-    limit."""
+    """(group, 2): death or withdrawal in the end, still on support on day 4; mean over severity."""
     n = len(Z_GRID)
     grid = np.repeat(_with_constants(hazards, logs), n, axis=0)
     z = np.tile(Z_GRID, len(hazards))

@@ -21,8 +21,7 @@ def to_minute(hours: Array) -> Array:
 
 
 def add_hours(start: pd.Series, hours: Array | pd.Series) -> pd.Series:
-    """Moments so many hours after `start` (same kind of time), to the minute; NaT where the hours are
-    missing."""
+    """Moments so many hours after `start`, to the minute; NaT where the hours are missing."""
     minutes = np.round(np.asarray(hours, dtype=float) * 60.0)
     gap = np.full(len(minutes), np.timedelta64("NaT"), dtype="timedelta64[m]")
     known = np.isfinite(minutes)

@@ -68,19 +68,13 @@ def generate(
     settings = settings or Settings()
     last = date(start_year + years - 1, 12, 31)
     twice = TwiceHours(programme.zone, start_year, start_year + years + 11)
+    noon = pd.Timestamp(last).replace(hour=12)
+    cutoff = noon.tz_localize(programme.zone).tz_convert("UTC").tz_localize(None)
     people = draw_persons(math.ceil(n_runs * 1.06) + 60, seed, settings)
-    course = draw_course(people, seed, settings)
-    cutoff = (
-        pd.Timestamp(last).replace(hour=12).tz_localize(programme.zone).tz_convert("UTC").tz_localize(None)
-    )
     people["start_utc"] = twice.after(_starts(len(people), seed, start_year, cutoff, programme, settings))
-    for column in ("end_h", "again_h", "left_h", "death_h"):
-        course[column] = twice.hours_after(people["start_utc"], course[column])
-    second_start = add_hours(people["start_utc"], course["again_h"])
-    course["again_end_h"] = twice.hours_after(second_start, course["again_end_h"])
     people["entry_h"] = _arrivals(len(people), seed, settings, twice, people["start_utc"])
-    run = _runs(people, course, n_runs, cutoff)
-    run = _describe(run, twice, seed, programme)
+    course = _outside_twice_hours(draw_course(people, seed, settings), people["start_utc"], twice)
+    run = _describe(_runs(people, course, n_runs, cutoff), twice, seed, programme)
     ending = ending_frame(run, cutoff, seed)
     inputs = input_frame(run, twice, seed, settings)
     recorded = recorded_inputs(inputs, run, seed, settings)
@@ -108,11 +102,16 @@ def generate(
     )
 
 
+def _outside_twice_hours(course: pd.DataFrame, start: pd.Series, twice: TwiceHours) -> pd.DataFrame:
+    moved = {c: twice.hours_after(start, course[c]) for c in ("end_h", "again_h", "left_h", "death_h")}
+    second = add_hours(start, moved["again_h"])
+    return course.assign(**moved, again_end_h=twice.hours_after(second, course["again_end_h"]))
+
+
 def _starts(
     n: int, seed: int, start_year: int, cutoff: pd.Timestamp, programme: Programme, settings: Settings
 ) -> pd.Series:
-    """Starts of support in UTC, spread evenly over the period; some crowd before the extract if that is asked
-    for."""
+    """Starts in UTC, spread evenly over the period; some crowd before the extract if that is asked for."""
     rng = stream(seed, "starts")
     first = pd.Timestamp(start_year, 1, 1).tz_localize(programme.zone).tz_convert("UTC").tz_localize(None)
     minutes = int((cutoff - first) / pd.Timedelta(minutes=1))

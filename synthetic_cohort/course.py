@@ -1,5 +1,4 @@
-"""From the start of support to the last that is known: ending, second run, hospital stay, death after
-discharge.
+"""From the start of support on: ending, second run, hospital stay, death after discharge.
 
 All times in hours. What happened is drawn first and in full; what an extract made on one day could know is
 cut out of it afterwards (`observed`).

@@ -19,8 +19,9 @@ def age_under_18(p: Planter) -> None:
 
 
 def end_before_start(p: Planter) -> None:
-    """Support ends five hours before it began."""
-    row = p.pick(p.tables.flat["end_kind"] == "recovery", None, "end")
+    """Support ends five hours before it began. In a run without events, which would lie after it."""
+    flat = p.tables.flat
+    row = p.pick((flat["n_events"] == 0) & (flat["n_steps"] == 0), None, "end")
     if row is not None:
         p.put(
             "end_before_start",

@@ -50,8 +50,7 @@ DEFECT_KINDS = tuple(PLANTERS)
 def plant(
     tables: Tables, seed: int, kinds: Sequence[str] | None = None, each: int = 1
 ) -> tuple[Tables, list[Defect]]:
-    """A copy of the tables with `each` defects of each kind that this style can carry, and the truth about
-    them.
+    """A copy of the tables with `each` defects of each kind that this style can carry, and the truth.
 
     Raises ValueError for an unknown kind.
     """

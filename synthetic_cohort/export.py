@@ -1,5 +1,4 @@
-"""Write an export of a cohort in one of the styles, with planted defects, and the mapping file that goes with
-it."""
+"""Write an export in one of the styles, with planted defects, and the mapping file that goes with it."""
 
 from __future__ import annotations
 

@@ -62,8 +62,7 @@ def group_hazards(settings: Settings) -> Array:
 
 
 def scaled(hazards: Array, z: Array, is_old: Flags, settings: Settings) -> Array:
-    """Hazards of single runs: (run, band, ending) with severity and the age limit of pump and transplant
-    applied."""
+    """Hazards of single runs, (run, band, ending): with severity and the age limit of pump and transplant."""
     out = hazards.copy()
     out[:, :, DEADLY_KINDS] *= np.exp(settings.z_death * z)[:, None, None]
     out[:, :, RECOVERY_KIND] *= np.exp(settings.z_recovery * z)[:, None]

@@ -1,5 +1,4 @@
-"""What was known before support: every quantity that the usual pre-support scores ask for, in canonical
-units.
+"""What was known before support: every quantity that the usual pre-support scores ask for.
 
 Severity pulls lactate, pH, bicarbonate, creatinine, coma score and vasoactive doses in the directions that
 published cohorts show; how strongly is a project choice. Column names carry the unit.
@@ -76,8 +75,7 @@ def input_frame(run: pd.DataFrame, twice: TwiceHours, seed: int, settings: Setti
 
 
 def recorded_inputs(inputs: pd.DataFrame, run: pd.DataFrame, seed: int, settings: Settings) -> pd.DataFrame:
-    """The same with gaps: at random, and no blood pressure of its own for most who were cannulated in
-    compressions."""
+    """The same with gaps: at random, and mostly no blood pressure for those cannulated in compressions."""
     rng = stream(seed, "gaps")
     out = inputs.copy()
     if not settings.has_missing:

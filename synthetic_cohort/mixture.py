@@ -1,5 +1,4 @@
-"""Who is who at a given severity: shares of hazard groups and of those above the age limit, for exact
-integration."""
+"""Who is who at a given severity: shares of hazard groups and of those above the age limit."""
 
 from __future__ import annotations
 
@@ -46,8 +45,7 @@ def share_arrest(group: Group, z: Array, settings: Settings) -> Array:
 
 
 def cells(settings: Settings) -> tuple[Array, Array, Array, Array, Array]:
-    """The mixture as weighted cells: (hazard group, indication, severity, above the age limit, weight), each
-    1-d.
+    """The mixture as weighted cells: hazard group, indication, severity, above the age limit, weight.
 
     The weights add up to one.
     """

@@ -1,5 +1,4 @@
-"""The state of one planting: which runs are taken, what was planted in which row, and on which line that
-ended up."""
+"""The state of one planting: which runs are taken, what was planted, and on which line it ended up."""
 
 from __future__ import annotations
 
@@ -48,8 +47,7 @@ class Planter:
         return flat.iloc[int(np.searchsorted(flat["run_no"].to_numpy(), row.run_no))]
 
     def pick(self, suits: pd.Series, sheet: Sheet | None = None, *roles: str) -> Row | None:
-        """A row of an untouched run for which `suits` (aligned to the flat frame) holds and the roles are
-        filled."""
+        """A row of an untouched run for which `suits` (by flat row) holds and roles are filled."""
         flat = self.tables.flat
         alone = flat.groupby("person_no")["run_no"].transform("size") == 1
         allowed = set(flat.loc[suits & alone, "run_no"]) - self.used

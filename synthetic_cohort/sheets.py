@@ -1,5 +1,4 @@
-"""Exports as sheets of cells before they are written: who planted what where stays known until the line
-numbers are."""
+"""Exports as sheets of cells, before they are written."""
 
 from __future__ import annotations
 
@@ -40,8 +39,7 @@ class Sheet:
         return self.file.endswith(".csv")
 
     def lines(self) -> list[int]:
-        """Physical line (from 1) on which each row begins; in a CSV a line break inside a cell makes a row
-        longer."""
+        """Physical line (from 1) on which each row begins; in a CSV, line breaks inside cells count."""
         line = len(self.titles) + 2
         lines = []
         for row in self.rows:
@@ -143,8 +141,7 @@ def build_sheet(
 
 
 def flat_frame(cohort: Cohort) -> pd.DataFrame:
-    """One row a run with everything of one-row-a-run frames side by side, and moments as wall-clock time
-    (*_at)."""
+    """One row a run: the frames of that grain side by side, and moments as wall-clock time (*_at)."""
     person = cohort.person.drop(columns=["sex", "height_cm", "weight_kg", "birth_date", "frailty"])
     run = cohort.run.drop(
         columns=[
@@ -166,6 +163,8 @@ def flat_frame(cohort: Cohort) -> pd.DataFrame:
         flat = flat.merge(frame, on="run_no", how="left", validate="one_to_one")
     flat["cpc_recorded"] = flat["cpc"].where(flat["is_recorded"].eq(True))
     flat["mrs_recorded"] = flat["mrs"].where(flat["is_recorded"].eq(True))
+    for name, frame in (("n_events", cohort.complication), ("n_steps", cohort.weaning_step)):
+        flat[name] = flat["run_no"].map(frame["run_no"].value_counts()).fillna(0).astype(int)
     hours = {
         "end_at": flat["end_h"],
         "discharge_at": flat["discharge_h"],

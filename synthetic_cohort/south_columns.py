@@ -45,6 +45,22 @@ EVENT_WORDS = {
 }
 CONSEQUENCES: dict[object, Cell] = {"seen": 1, "treated": 2, "procedure": 3, "lasting_harm": 4, "fatal": 5}
 
+HEARD_BY: dict[object, Cell] = {"clinic": "visit", "phone": "call", "letter": "mail"}
+
+# Header, column of the flat frame, words.
+WORDS: tuple[tuple[str, str, dict[object, Cell]], ...] = (
+    (
+        "Goal",
+        "intended_pathway",
+        {"recovery": "R", "decision": "D", "durable_lvad": "L", "transplantation": "T"},
+    ),
+    ("Arrest where", "arrest_location", {"out_of_hospital": 1, "emergency_department": 2, "in_hospital": 3}),
+    ("Rhythm", "first_rhythm", {"vf": "VF", "pulseless_vt": "pVT", "pea": "PEA", "asystole": "flat"}),
+    ("Shock class", "shock_stage", {"C": "C", "D": "D", "E": "E"}),
+    ("LV", "lv_function", {"normal": "nl", "mild": "mild", "moderate": "mod", "severe": "sev"}),
+    ("Return", "arterial_return", {"femoral": "F", "axillary": "A", "central": "C"}),
+)
+
 # Header, column of the flat frame, factor to the written unit, digits, role.
 VALUES = (
     ("Wt lb", "weight_kg", 1 / 0.45359237, 1, "weight"),

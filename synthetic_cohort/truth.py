@@ -125,8 +125,7 @@ def _leaves_alive(settings: Settings, final: Array, group: Index, indication: In
 
 
 def _second_run(settings: Settings) -> Array:
-    """Probability of leaving hospital alive from the start of a second run, by indication; severity is drawn
-    anew."""
+    """Probability of leaving hospital alive from the start of a second run on, by indication."""
     group, indication, z, old, weight = cells(settings)
     indication = indication.astype(int)
     hazards = scaled(balanced_hazards(settings)[indication], z, old > 0, settings)

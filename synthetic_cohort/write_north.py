@@ -1,5 +1,4 @@
-"""Style "north": one wide CSV with semicolons, byte-order mark, decimal comma, SI units, kPa, identifiers and
-remarks.
+"""Style "north": one wide CSV with semicolons, byte-order mark, decimal comma, SI units and identifiers.
 
 The end of support stands in two columns, systolic and diastolic pressure in one cell, and each complication
 has a column for its first onset. An end that is missing means that support goes on.

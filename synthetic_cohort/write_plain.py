@@ -1,5 +1,4 @@
-"""Style "plain": one small tidy CSV, UTF-8, ISO times in local time, one row a run. For tests and first
-steps."""
+"""Style "plain": one small tidy CSV, UTF-8, ISO times in local time, one row a run."""
 
 from __future__ import annotations
 

@@ -1,6 +1,7 @@
-"""Style "south": a workbook with a title above the header, typed dates in the run sheet but date texts in the
-event sheet, numeric codes explained in a sheet of their own, and the units of the United States.
+"""Style "south": a workbook with numeric codes, the units of the United States and two kinds of dates.
 
+A title stands above the header of the run sheet, whose dates are typed, while those of events are texts. The
+codes are explained in a sheet of their own.
 Of the birth only the year is kept; of the time after, only the last contact.
 """
 
@@ -23,7 +24,16 @@ from synthetic_cohort.sheets import (
     moments,
     wall,
 )
-from synthetic_cohort.south_columns import CAUSE_WORDS, CONSEQUENCES, ENDING_WORDS, EVENT_WORDS, FLAGS, VALUES
+from synthetic_cohort.south_columns import (
+    CAUSE_WORDS,
+    CONSEQUENCES,
+    ENDING_WORDS,
+    EVENT_WORDS,
+    FLAGS,
+    HEARD_BY,
+    VALUES,
+    WORDS,
+)
 
 FILE = "south_ledger.xlsx"
 _TEXT = "%m/%d/%Y %I:%M %p"
@@ -81,81 +91,44 @@ EVENTS = _codes_of(EVENT_WORDS, KIND_KEYS)
 
 
 def _run_columns(flat: pd.DataFrame) -> list[Column]:
-    columns: list[Column] = [
+    columns = [*_who_and_when(flat), *_words(flat)]
+    columns += [
+        (header, role, typed(flat[name] * factor, digits)) for header, name, factor, digits, role in VALUES
+    ]
+    columns += [(header, "", coded(flat[name], _YES_NO, None)) for header, name in FLAGS]
+    return [*columns, *_after(flat)]
+
+
+def _who_and_when(flat: pd.DataFrame) -> list[Column]:
+    nicknames = [f"{a[:2]}{b[:3]}" for a, b in zip(flat["first_name"], flat["last_name"], strict=True)]
+    return [
         ("Episode", "run", _episode(flat["run_no"])),
         ("Chart", "person", [f"C{r}" for r in flat["record_number"]]),
-        (
-            "Nickname",
-            "",
-            [f"{a[:2]}{b[:3]}" for a, b in zip(flat["first_name"], flat["last_name"], strict=True)],
-        ),
+        ("Nickname", "", list(nicknames)),
         ("YOB", "birth", [d.year for d in flat["birth_date"]]),
         ("Sex code", "sex", coded(flat["sex"], {"female": 2, "male": 1})),
         ("Reason code", "cause", coded(flat["indication_group"], CAUSES)),
         ("Flow on", "start", _dates(flat["start_local"])),
         ("Flow off", "end", _dates(flat["end_at"])),
         ("Exit code", "end_kind", coded(flat["end_kind"], ENDS, None)),
-        (
-            "Goal",
-            "",
-            coded(
-                flat["intended_pathway"],
-                {"recovery": "R", "decision": "D", "durable_lvad": "L", "transplantation": "T"},
-            ),
-        ),
         ("Reached us", "", _dates(flat["arrival_at"])),
-        (
-            "Arrest where",
-            "",
-            coded(
-                flat["arrest_location"],
-                {"out_of_hospital": 1, "emergency_department": 2, "in_hospital": 3},
-                None,
-            ),
-        ),
-        (
-            "Rhythm",
-            "",
-            coded(
-                flat["first_rhythm"],
-                {"vf": "VF", "pulseless_vt": "pVT", "pea": "PEA", "asystole": "flat"},
-                None,
-            ),
-        ),
-        ("Shock class", "", coded(flat["shock_stage"], {"C": "C", "D": "D", "E": "E"}, None)),
-        (
-            "LV",
-            "",
-            coded(
-                flat["lv_function"],
-                {"normal": "nl", "mild": "mild", "moderate": "mod", "severe": "sev"},
-                None,
-            ),
-        ),
-        (
-            "Return",
-            "",
-            coded(flat["arterial_return"], {"femoral": "F", "axillary": "A", "central": "C"}, None),
-        ),
     ]
-    columns += [
-        (header, role, typed(flat[name] * factor, digits)) for header, name, factor, digits, role in VALUES
-    ]
-    columns += [(header, "", coded(flat[name], _YES_NO, None)) for header, name in FLAGS]
-    columns += [
+
+
+def _words(flat: pd.DataFrame) -> list[Column]:
+    return [(header, "", coded(flat[name], codes, None)) for header, name, codes in WORDS]
+
+
+def _after(flat: pd.DataFrame) -> list[Column]:
+    return [
         ("Out of hospital", "discharge", _dates(flat["discharge_at"])),
         ("Alive out", "alive", coded(flat["is_alive_at_discharge"], _YES_NO, None)),
         ("CPC at exit", "cpc", typed(flat["cpc_recorded"], 0)),
         ("mRS at exit", "", typed(flat["mrs_recorded"], 0)),
         ("Last heard", "", _dates(flat["contact_at"])),
         ("Status then", "", coded(flat["vital_status"], {"alive": "A", "dead": "D"}, None)),
-        (
-            "Heard by",
-            "",
-            coded(flat["contact_kind"], {"clinic": "visit", "phone": "call", "letter": "mail"}, None),
-        ),
+        ("Heard by", "", coded(flat["contact_kind"], HEARD_BY, None)),
     ]
-    return columns
 
 
 def _events(cohort: Cohort, flat: pd.DataFrame) -> Sheet:

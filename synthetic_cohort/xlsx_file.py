@@ -20,8 +20,7 @@ _MOMENT = "yyyy-mm-dd hh:mm"
 
 
 def workbook_bytes(sheets: Sequence[Sheet]) -> bytes:
-    """The workbook. Dates are typed cells, words that begin with # are spreadsheet errors, text never is a
-    formula."""
+    """The workbook: typed dates, #-words as spreadsheet errors, and text that never is a formula."""
     book = Workbook()
     book.remove(book.active)
     book.properties.created = book.properties.modified = _STAMP

@@ -1,5 +1,6 @@
-"""The truth against a second, slow simulation that shares no code with the generator's draws: quarter-hour
-steps, a chance for every exit in each, written from the tables of settings."""
+"""The truth against a slow simulation that shares no code with the generator's draws.
+
+Quarter-hour steps, with a chance for every exit in each, written from the tables of settings."""
 
 from __future__ import annotations
 
@@ -86,9 +87,9 @@ def test_truth_of_incidence_agrees_with_steps() -> None:
 
 @pytest.mark.parametrize("variance", [0.0, 0.5, 2.0])
 def test_first_episode_agrees_with_the_laplace_transform(variance: float) -> None:
-    """With gamma frailty of mean 1 and variance v, the probability of no episode by t is (1 + v H(t)) ** (-1
-    / v), for those still on support. A kind that happens once, at hazards without modifiers, in runs of fixed
-    length."""
+    """No episode by t has probability (1 + v H(t)) ** (-1 / v) under gamma frailty of mean 1 and variance v.
+
+    A kind that happens once, at hazards without modifiers, in runs of fixed length."""
     kind = next(k for k in KINDS if k.key == "stroke")
     hazard = band_hazards()[KINDS.index(kind)]
     length = 150.0

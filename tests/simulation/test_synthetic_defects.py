@@ -1,5 +1,4 @@
-"""Planted defects are where the truth list says, read back with the csv module and openpyxl, and nowhere
-else."""
+"""Planted defects are where the truth list says, read back by the csv module and openpyxl."""
 
 from __future__ import annotations
 
@@ -38,7 +37,7 @@ NOT_IN = {
 
 @pytest.fixture(scope="module")
 def cohort() -> Cohort:
-    return generate(320, seed=41)
+    return generate(260, seed=41)
 
 
 @pytest.fixture(scope="module")

@@ -1,5 +1,4 @@
-"""The frames of a cohort hang together: times inside support, intervals that tile, people who stay who they
-are."""
+"""The frames of a cohort hang together: times inside support, intervals that tile."""
 
 from __future__ import annotations
 

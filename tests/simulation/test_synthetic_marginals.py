@@ -16,7 +16,7 @@ import pytest
 from synthetic_cohort import Cohort, Settings, Truth, generate, truth
 from synthetic_cohort.hazards import group_hazards, incidence_at
 
-N = 30_000
+N = 24_000
 
 
 @pytest.fixture(scope="module")
@@ -26,7 +26,7 @@ def cohort() -> Cohort:
 
 @pytest.fixture(scope="module")
 def true() -> Truth:
-    return truth(n=200_000)
+    return truth(n=100_000)
 
 
 def own_first(cohort: Cohort) -> pd.Series:
@@ -156,7 +156,7 @@ def test_survival_and_discharge_agree_with_truth(cohort: Cohort, true: Truth) ->
     rows = own_first(cohort)
     death = cohort.follow_up.loc[rows, "true_death_h"].fillna(np.inf)
     for row in true.survival.itertuples():
-        spread = row.probability * (1 - row.probability) / 200_000
+        spread = row.probability * (1 - row.probability) / 100_000
         assert within((death > row.day * 24.0).mean(), row.probability, len(death), spread), row
     alive = cohort.follow_up.loc[rows, "true_left_alive"].astype(bool)
     for row in true.discharge.itertuples():
@@ -173,5 +173,5 @@ def test_complication_rates_agree_with_truth(cohort: Cohort, true: Truth) -> Non
         events = cohort.complication[cohort.complication["kind"] == row.kind]
         count = cohort.run["run_no"].map(events["run_no"].value_counts()).fillna(0.0)[rows]
         rate = row.per_1000_days / 1000.0
-        spread = math.sqrt(((count - rate * days) ** 2).sum() * (1 + len(days) / 200_000)) / days.sum()
+        spread = math.sqrt(((count - rate * days) ** 2).sum() * (1 + len(days) / 100_000)) / days.sum()
         assert abs(count.sum() / days.sum() - rate) <= 4.0 * spread, row
