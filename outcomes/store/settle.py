@@ -151,12 +151,15 @@ def settle_rows(con: duckdb.DuckDBPyConnection) -> Counts:
 def list_findings(con: duckdb.DuckDBPyConnection, batch: int) -> list[Finding]:
     """Findings in order of place. A header is the one that the mapping lists; none is a place."""
     rows = con.execute(
-        """select f.code, f.effect, s.file_key, s.sheet_key, f.line, coalesce(nullif(f.header, ''), h.header, o.header, ''), f.rule, f.shape
+        """select f.code, f.effect, s.file_key, s.sheet_key, f.line, coalesce(nullif(f.header, ''), h.header, o.header, t.header, ''), f.rule, f.shape
         from work.finding f join work.sheet_info s using (sheet_no)
         left join (select sheet_no, field, min(header) as header from work.piece_info group by all) h
           on h.sheet_no = f.sheet_no and h.field = f.field
         left join (select sheet_no, min(header) as header from work.piece_info where field = 'complication_event.onset' group by all) o
           on o.sheet_no = f.sheet_no and f.field like 'complication.%'
+        left join vocabulary.field v on v.field = f.field
+        left join (select sheet_no, target_table, target_column, min(header) as header from work.piece_info group by all) t
+          on t.sheet_no = f.sheet_no and t.target_table = v.target_table and t.target_column = v.target_column
         order by s.sheet_no, f.line, f.code, f.header, f.field"""
     ).fetchall()
     findings = []
