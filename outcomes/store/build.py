@@ -125,7 +125,7 @@ def fill_ledger(con: duckdb.DuckDBPyConnection, values: dict[str, object], files
     """Copy the earlier ledger and add this batch: what was read, what it made of it, what it replaced."""
     batch = values["batch_no"]
     if old:
-        for table in ("batch", "batch_file", "finding", "replaced", "run_batch", "carried"):
+        for table in ("batch", "batch_file", "finding", "replaced", "run_batch", "carried", "source_column"):
             con.execute(f"insert into new.ledger.{table} select * from old.ledger.{table}")
     names = ", ".join(values)
     con.execute(f"insert into new.ledger.batch ({names}) values ({', '.join('?' * len(values))})", list(values.values()))
@@ -146,5 +146,18 @@ def fill_ledger(con: duckdb.DuckDBPyConnection, values: dict[str, object], files
         where state in ('new', 'changed') order by run_key""",
         [batch],
     )
+    _note_columns(con, mapping, int(str(batch)))
     for field in sorted(mapping.carried_fields):
         con.execute("insert into new.ledger.carried values (?, ?) on conflict do nothing", [mapping.source.key, field])
+
+
+def _note_columns(con: duckdb.DuckDBPyConnection, mapping: Mapping, batch: int) -> None:
+    """Which column gave which field in this batch: headers as the mapping lists them, so that a run can be traced."""
+    rows = [
+        [mapping.source.key, batch, file.key, sheet.key, column.header, piece.field.name, piece.unit]
+        for file in mapping.files
+        for sheet in file.sheets
+        for column in sheet.columns
+        for piece in column.pieces
+    ]
+    con.executemany("insert into new.ledger.source_column values (?, ?, ?, ?, ?, ?, ?)", rows)

@@ -51,6 +51,8 @@ create table ledger.replaced (batch_no integer not null, run_key text not null, 
 create table ledger.table_state (table_name text primary key, n_rows bigint not null, content_sha256 text not null);
 create table ledger.run_batch (run_key text primary key, batch_no integer not null);
 create table ledger.carried (source_key text not null, field text not null, primary key (source_key, field));
+create table ledger.source_column (source_key text not null, batch_no integer not null, file_key text not null, sheet_key text not null,
+  header text not null, field text not null, unit text not null);
 """
 
 

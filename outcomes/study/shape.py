@@ -46,7 +46,13 @@ def slug(text: str) -> str:
 
 
 def run_list(label: str, keys: pd.Series) -> RunList:
-    return RunList(label, tuple(sorted(str(k) for k in keys)))
+    """A list of runs under short keys, as every page of the report names them."""
+    return RunList(label, tuple(sorted(short_key(k) for k in keys)))
+
+
+def short_key(key: object) -> str:
+    """The first ten characters of a random key: two runs of a thousand collide once in a million programmes."""
+    return str(key)[:10]
 
 
 def first_runs(cohort: Cohort) -> pd.DataFrame:
