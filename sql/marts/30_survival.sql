@@ -1,5 +1,6 @@
 -- Grain: one row a support run. From the start of support to death, or to the last time at which the person is known to
 -- be alive. What a date beside a death is, and whether no death means alive, is what the source declares.
+-- Who is known to be dead without a date is censored when last known alive, and no register makes them live on.
 -- time_low_h, time_high_h: both ends where only the day of the news of a death is known.
 with known as (
   select
@@ -12,7 +13,7 @@ with known as (
     end as in_hospital_death_h,
     greatest(
       m.entry_h,
-      case when m.end_kind in ('death', 'withdrawal') then 0.0 else coalesce(m.support_h, 0.0) end,
+      case when m.end_kind = 'death' then 0.0 else coalesce(m.support_h, 0.0) end,
       case when m.is_alive_at_discharge then coalesce(m.discharge_h, 0.0) else 0.0 end,
       coalesce(f.contact_h, 0.0)
     ) as last_alive_h
@@ -27,6 +28,7 @@ with known as (
     in_hospital_death_h is null and told_h is not null and vital_status_date = 'day of news' as is_news,
     case
       when no_death_means <> 'alive' then 0.0
+      when is_alive_at_discharge = false or vital_status = 'dead' then 0.0
       when observable_to_day_365 then 8760.0
       when observable_to_day_180 then 4320.0
       when observable_to_day_90 then 2160.0

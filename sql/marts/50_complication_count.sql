@@ -23,7 +23,7 @@ with carried as (
     count(e.onset_h) filter (where e.onset_h <= 0) as n_before,
     count(e.onset_h) filter (where e.onset_h > 0 and e.onset_h <= c.support_h and e.onset_h > c.entry_h and e.onset_h >= c.from_h) as n_on_support,
     count(e.onset_h) filter (where e.onset_h > 0 and e.onset_h < c.from_h) as n_too_early,
-    count(e.onset_h) filter (where e.onset_h > c.support_h) as n_after_end,
+    count(e.onset_h) filter (where e.onset_h > c.support_h and e.onset_h <= c.support_h + c.window_h) as n_after_end,
     min(e.onset_h) filter (where e.onset_h > greatest(0, c.entry_h) and e.onset_h >= c.from_h and e.onset_h <= c.support_h) as first_onset_h
   from carried c left join mart.complication_episode e on e.run_key = c.run_key and e.kind = c.kind
   group by all
@@ -37,6 +37,7 @@ with carried as (
       when at_risk = 'monitored' and right_sided_monitoring is null then 'monitoring not recorded'
       when at_risk = 'monitored' and not right_sided_monitoring then 'no right-sided monitoring'
       when at_risk = 'no_rrt' and (on_rrt_at_zero or dialysis_dependent) then 'on renal replacement at start'
+      when support_h is null then 'end of support not recorded'
       when support_h <= greatest(from_h, entry_h) then 'support ended before being at risk'
     end as not_at_risk_because
   from counted

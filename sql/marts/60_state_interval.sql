@@ -12,7 +12,8 @@ with times as (
   from times
 )
 select run_key, person_key, 'on support' as state, entry_h as from_h, support_h as to_h,
-  case when dies_on_support then 'dead' when stops then null when last_h > support_h or left_h is not null then 'in hospital' end as next_state
+  case when dies_on_support then 'dead' when stops then null
+    when left_h = support_h then 'discharged' when last_h > support_h or left_h is not null then 'in hospital' end as next_state
 from bounded
 union all
 select run_key, person_key, 'in hospital', support_h, coalesce(left_h, last_h),

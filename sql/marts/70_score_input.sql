@@ -43,6 +43,9 @@ with pre as (
   select run_key, max(low_flow_min) as low_flow_min, max(call_to_arrival_min) as call_to_arrival_min,
     bool_or(shockable_on_arrival) as rhythm_shockable_at_arrival, bool_or(first_rhythm in ('vf', 'pulseless_vt')) as had_first_rhythm_shockable
   from record.arrest_episode group by run_key
+), intubation as (
+  select run_key, bool_or(missing_kind = 'not_applicable') as is_not_applicable from record.missing_value
+  where field in ('pre_support_state.intubated_at', 'pre_support_state.intubation_hours') group by run_key
 ), doses as (
   select run_key,
     max(dose) filter (where drug = 'dopamine') as dopamine_ug_kg_min,
@@ -68,7 +71,7 @@ select
   s.intubation_hours,
   case when s.ventilated_at_zero is not null then s.ventilated_at_zero
        when s.intubation_hours is not null then true
-       when x.missing_kind = 'not_applicable' then false end as was_ventilated,
+       when x.is_not_applicable then false end as was_ventilated,
   s.compressions_at_cannulation as had_compressions_at_cannulation, s.acute_renal_failure as has_acute_renal_failure, s.liver_failure as has_liver_failure,
   s.cns_dysfunction as has_cns_dysfunction, s.confusion_at_presentation as had_confusion_at_presentation, s.acute_coronary_syndrome as is_acute_coronary_syndrome,
   s.pci_done as had_pci,
@@ -81,7 +84,7 @@ from mart.run r
 left join record.indication i on i.run_key = r.run_key and i.is_primary
 left join record.pre_support_state s on s.run_key = r.run_key
 left join record.history h on h.run_key = r.run_key
-left join record.missing_value x on x.run_key = r.run_key and x.field in ('pre_support_state.intubated_at', 'pre_support_state.intubation_hours')
+left join intubation x on x.run_key = r.run_key
 left join worst w on w.run_key = r.run_key
 left join paired p on p.run_key = r.run_key
 left join oxygen o on o.run_key = r.run_key
