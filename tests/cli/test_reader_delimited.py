@@ -8,8 +8,8 @@ import pytest
 from reader_made import grids, notes, places, refused, rows, spec
 
 from outcomes.errors import UsageError
-from outcomes.intake.reading import FileSpec, SheetSpec, headers, read
-from outcomes.intake.reading.limits import COLUMNS, FIELD_CHARS, LINE_BYTES, RECORD_CHARS
+from outcomes.intake.reading import FileSpec, SheetSpec, headers, read, record
+from outcomes.intake.reading.limits import COLUMNS, FIELD_CHARS, LINE_BYTES
 
 
 def test_cells_stay_text_and_empty_is_none():
@@ -150,8 +150,10 @@ def test_field_bound():
     assert places('a,b\n1,"' + "x\n" * FIELD_CHARS + '"\n') == [("FIELD-LONG", 2, "column 2")]
 
 
-def test_record_bound():
-    assert places('a,b\n1,"' + "x\n" * RECORD_CHARS) == [("RECORD-LONG", 2, "column 2")]
+def test_record_bound(monkeypatch):
+    monkeypatch.setattr(record, "RECORD_CHARS", 1_000)
+    assert rows('a,b\n1,"' + "x\n" * 495 + '"\n')[0][1] == "x\n" * 495
+    assert places('a,b\n1,"' + "x\n" * 500) == [("RECORD-LONG", 2, "column 2")]
 
 
 def test_column_bound():

@@ -145,6 +145,15 @@ def test_prefixes_do_not_matter():
     assert rows(packed(made), kind="xlsx") == [["1", "2"]]
 
 
+def test_no_table_of_contents():
+    assert code(changed("_rels/.rels", relations(("r1", "thumbnail", "x.png")))) == "WORKBOOK"
+
+
+def test_space_between_elements():
+    spaced = sheet(HEAD + row(2, "1"), before="\n <sheetPr/>\n").replace("<row", "\n  <row")
+    assert rows(packed(changed("xl/worksheets/sheet1.xml", spaced)), kind="xlsx") == [["1", None]]
+
+
 def test_a_chart_is_not_a_table():
     links = relations(("r1", "chartsheet", "chartsheets/sheet1.xml"))
     assert code(changed("xl/_rels/workbook.xml.rels", links)) == "SHEET"

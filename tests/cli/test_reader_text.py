@@ -179,6 +179,10 @@ def test_damage_before_us_is_noted():
     assert [(n.code, n.line) for n in found] == [("READ.REPLACED", 2)]
 
 
+def test_notes_are_bounded():
+    assert len(notes("a\n" + "\ufffd\n" * 1_200)) == 1_000
+
+
 def test_utf16_without_mark_declared_utf8_is_called_nul():
     assert places("a,b\n1,2\n".encode("utf-16-le"))[0] == ("NUL", 1, "")
 

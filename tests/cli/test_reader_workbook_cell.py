@@ -104,6 +104,8 @@ MOMENT = styles("dd.mm.yyyy hh:mm")
         ("-1", "0", ErrorCell("error")),
         ("2958465", "0", dt.datetime(9999, 12, 31)),
         ("2958466", "0", ErrorCell("error")),
+        ("2958000", "1", ErrorCell("error")),
+        ("-1E300", "0", ErrorCell("error")),
         ("1E300", "0", ErrorCell("error")),
     ],
 )

@@ -2,6 +2,18 @@
 column."""
 
 from outcomes.intake.reading.grid import Cell, ErrorCell, FileSpec, Grid, Number, SheetSpec
+from outcomes.intake.reading.outline import SheetOutline, outline
 from outcomes.intake.reading.reader import headers, read
 
-__all__ = ["Cell", "ErrorCell", "FileSpec", "Grid", "Number", "SheetSpec", "headers", "read"]
+__all__ = [
+    "Cell",
+    "ErrorCell",
+    "FileSpec",
+    "Grid",
+    "Number",
+    "SheetOutline",
+    "SheetSpec",
+    "headers",
+    "outline",
+    "read",
+]

@@ -41,9 +41,16 @@ def converter(kind: pa.DataType) -> _Convert | None:
     return None
 
 
-def _text(kind: pa.DataType) -> _Convert | None:
-    if not is_text(kind):
-        return None
+def to_cells(column: pa.Array) -> list[Cell]:
+    """Cells of one column of a batch. Raises what Arrow raises, and ArrowTypeError for a type that is
+    refused."""
+    convert = converter(column.type)
+    if convert is None:
+        raise pa.ArrowTypeError("refused type")
+    return convert(column)
+
+
+def _text(kind: pa.DataType) -> _Convert:
     if not pa.types.is_dictionary(kind):
         return lambda column: [cell or None for cell in column.to_pylist()]
 
@@ -121,8 +128,7 @@ def _clock(units: int) -> Callable[[int], Cell]:
     return make
 
 
-_MAKERS: tuple[tuple[Callable[[pa.DataType], bool], Callable[[pa.DataType], _Convert | None]], ...] = (
-    (pa.types.is_dictionary, _text),
+_MAKERS: tuple[tuple[Callable[[pa.DataType], bool], Callable[[pa.DataType], _Convert]], ...] = (
     (is_text, _text),
     (pa.types.is_boolean, lambda kind: _each(bool)),
     (pa.types.is_integer, lambda kind: _each(_integer)),

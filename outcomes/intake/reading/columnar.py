@@ -9,7 +9,7 @@ from typing import Any, BinaryIO
 import pyarrow as pa
 import pyarrow.parquet as pq
 
-from outcomes.intake.reading.arrow_cell import converter, is_text
+from outcomes.intake.reading.arrow_cell import converter, is_text, to_cells
 from outcomes.intake.reading.defects import Defects
 from outcomes.intake.reading.grid import Cell, Row, SheetSpec
 from outcomes.intake.reading.limits import COLUMNS, FIELD_CHARS, MIB, UNPACKED_BYTES
@@ -90,9 +90,8 @@ class Columnar:
     def _columns(self, batch: pa.RecordBatch, above: int, defects: Defects) -> list[list[Cell]]:
         columns: list[list[Cell]] = []
         for place, column in enumerate(batch.columns, 1):
-            convert = converter(column.type)
             try:
-                cells = convert(column) if convert else []
+                cells = to_cells(column)
             except UnicodeDecodeError:
                 raise defects.fatal("READ.ENCODING", above + 1, place, detail="or soon after it") from None
             except _BROKEN:

@@ -20,6 +20,11 @@ def fold(header: str) -> str:
     return unicodedata.normalize("NFC", unicodedata.normalize("NFC", header).strip().casefold())
 
 
+def looks_like_value(name: str) -> bool:
+    """A number, a date or a time, as a header hardly ever is."""
+    return bool(_VALUE.fullmatch(name))
+
+
 def judge_header(row: Row | None, line: int, separator: str, defects: Defects) -> tuple[str, ...]:
     """Headers of all columns, '' where there is none. separator: '' if the file has none. Raises Fatal if the
     line cannot be a header at all; lists twins and overlong headers."""
@@ -34,7 +39,7 @@ def judge_header(row: Row | None, line: int, separator: str, defects: Defects) -
         _refuse_other_separator(names[0], separator, line, defects)
     _list_twins(names, line, defects)
     filled = [name for name in names if name]
-    if sum(1 for name in filled if _VALUE.fullmatch(name)) * 2 > len(filled):
+    if sum(1 for name in filled if looks_like_value(name)) * 2 > len(filled):
         defects.add("READ.HEADER-DATA", line)
     return names
 

@@ -28,6 +28,7 @@ _DAY_0 = dt.datetime(1899, 12, 30)
 _DAY_0_BEFORE_MARCH_1900 = dt.datetime(1899, 12, 31)
 _DAY_0_OF_1904 = dt.datetime(1904, 1, 1)
 _FALSE_LEAP_DAY = 60
+_LAST_DAY = 2_958_465  # 31 December 9999, counted from 1900
 _PLAIN_FROM, _PLAIN_TO = 1e-9, 1e21
 _ERROR = ErrorCell("error")
 
@@ -85,7 +86,9 @@ def dated_cell(value: float, kind: str, is_1904: bool) -> Cell:
     becomes text such as '36:15:00', as it is shown. What a spreadsheet shows as ##### or as a date that never
     was is an error.
     """
-    seconds = round(value * _DAY)
+    if value >= _LAST_DAY + 1:
+        return _ERROR
+    seconds = round(max(value, -1) * _DAY)
     if seconds < 0:
         return _ERROR
     if kind == "elapsed":
