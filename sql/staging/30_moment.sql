@@ -1,6 +1,8 @@
--- Grain: as staging.typed. Local moments become UTC; a time that a change of clocks skipped or repeated is marked.
+-- Grain: as staging.typed. Local moments become UTC, by the offset in the cell or else by the declared zone; a time that
+-- a change of clocks skipped or repeated is marked.
 with zoned as (
-  select t.*, p.zone, p.zone <> 'in cell' and t.local_moment is not null and p.kind in ('moment', 'moment_before') as has_zone
+  select t.*, p.zone,
+    p.zone <> 'in cell' and t.offset_minutes is null and t.local_moment is not null and p.kind in ('moment', 'moment_before') as has_zone
   from staging.typed t
   join staging.piece p using (piece_no)
 )

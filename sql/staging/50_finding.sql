@@ -9,7 +9,7 @@ select
     else p.effect
   end as effect,
   regexp_replace(regexp_replace(regexp_replace(regexp_replace(
-    left(coalesce(v.word, ''), 40), '\p{Lu}', 'A', 'g'), '\p{L}', 'a', 'g'), '\p{N}', '9', 'g'), '[^ -~]', '?', 'g') as shape,
+    left(coalesce(v.word, ''), 40), '[^\P{L}\p{Lu}]', 'a', 'g'), '\p{Lu}', 'A', 'g'), '\p{N}', '9', 'g'), '[^ -~]', '?', 'g') as shape,
   case when v.defect = 'CELL.LIMIT' and v.received is not null then (
     select string_agg(distinct u.received_unit, ' or ' order by u.received_unit)
     from vocabulary.unit_conversion u

@@ -8,7 +8,7 @@ select * from (values
   ('person.birth_date',                'support_run',       'age_years',           'birth_date', '',     '',        null, null, 'cell'),
   ('person.birth_year',                'support_run',       'age_years',           'birth_year', '',     '',        null, null, 'cell'),
   ('support_run.start',                'support_run',       'start',               'moment',   '',       '',        null, null, 'run'),
-  ('support_run.age_years',            'support_run',       'age_years',           'integer',  'count',  '',        18.0, 130.0, 'cell'),
+  ('support_run.age_years',            'support_run',       'age_years',           'integer',  'count',  '',        0.0, 130.0, 'cell'),
   ('support_run.weight_kg',            'support_run',       'weight_kg',           'number',   'mass',   '',        20.0, 400.0, 'cell'),
   ('support_run.cannulated_where',     'support_run',       'cannulated_where',    'code',     '',       'place',   null, null, 'cell'),
   ('support_run.transferred_in',       'support_run',       'transferred_in',      'boolean',  '',       '',        null, null, 'cell'),

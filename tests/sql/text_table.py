@@ -4,7 +4,7 @@
     a       | 48    | recovery
     b       |       | open
 
-An empty cell is null. Values stay text and DuckDB casts them to the type of the column they are put into.
+An empty cell is null; {bar} stands for a bar inside a cell. Values stay text and DuckDB casts them to the type of the column they are put into.
 """
 
 from __future__ import annotations
@@ -45,7 +45,7 @@ def rows_of(text: str) -> list[dict[str, str | None]]:
     header = [name.strip() for name in lines[0].split("|")]
     rows = []
     for line in lines[1:]:
-        cells = [cell.strip() or None for cell in line.split("|")]
+        cells = [cell.strip().replace("{bar}", "|") or None for cell in line.split("|")]
         assert len(cells) == len(header), f"{len(cells)} cells under {len(header)} headers: {line}"
         rows.append(dict(zip(header, cells, strict=True)))
     return rows
