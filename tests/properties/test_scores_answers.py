@@ -215,3 +215,9 @@ def test_the_work_is_done_on_whole_columns():
         return sum((frame[name] > frame[name].iloc[0]) * 3 for name in frame.columns) - 6
 
     assert fastest(lambda: compute("save", frame)) < 20 * fastest(expression)
+
+
+@pytest.mark.parametrize(("age", "points"), [(64.99, 1), (65.0, 0)])
+def test_age_counts_in_completed_years(age, points):
+    """A convention: the printed brackets (18-38, 39-52) presuppose whole years."""
+    assert tips(age_years=age)["total"] == 3 + points

@@ -237,3 +237,15 @@ def test_not_applicable_must_be_points_or_range():
     gate = 'not_applicable = [{ when = [{ input = "had_arrest", is = true }], points = "some" }]\n'
     text = OWN.replace('key = "tide"\n', 'key = "tide"\n' + gate)
     assert "SCORE-FILE.TYPE" in {p.code for p in check_table(text).problems}
+
+
+def test_points_of_not_applicable_outside_the_bands_widen_an_unknown_gate():
+    gate = 'not_applicable = [{ when = [{ input = "had_arrest", is = true }], points = 9 }]\n'
+    tables = catalogue_of(OWN.replace('key = "tide"\n', 'key = "tide"\n' + gate))
+    runs = pd.DataFrame(
+        {"lactate_mmol_l": [1.0] * 3, "tide_m": [None] * 3, "had_arrest": [True, False, None]}
+    )
+    found = compute("harbour", runs, tables=tables)
+    assert list(zip(found["total_low"], found["total_high"], strict=True)) == [(12, 12), (-1, 1), (-1, 12)]
+    assert found["not_applicable"].tolist() == ["tide_m", "", ""]
+    assert found["missing"].tolist() == ["", "tide_m", "tide_m; had_arrest"]
