@@ -45,6 +45,7 @@ def endings(audit: Audit, days: list[float], end: float) -> Answer:
         {
             "endings": _count_table(counts, lists),
             "endings_at": _at_table("curve", "Cumulative incidence of each ending by day", days),
+            "endings_risk": _risk_layout(days),
             "endings_transfer": _at_table("apart", "The same with transfer out as an ending of its own", days),
             "weaned": _weaned_table(),
         },
@@ -116,13 +117,20 @@ def _count_table(counts: Result, lists: dict[str, object]) -> TableOf:
 
 
 def _at_table(result: str, caption: str, days: list[float]) -> TableOf:
+    """A row an ending, two columns a day."""
     names = dict(ENDINGS) | ({"transfer out": "transferred out"} if result == "apart" else {}) | {"still supported": "still supported"}
-    columns = [ColumnOf("day", "Day", "time", ("time",), {"cause": "still supported"}), ColumnOf("at_risk", "At risk", "count", ("at_risk",), {"cause": "still supported"})]
-    for name, label in names.items():
-        columns.append(ColumnOf(slug(name), label, "percent", ("estimate", "n"), {"cause": name}))
-        columns.append(ColumnOf(f"{slug(name)}_ci", "", "percent_interval", ("lower", "upper", "n"), {"cause": name}, over=""))
-    rows = tuple(RowOf(f"day_{d:g}", f"day {d:g}", {"time": d}) for d in days)
-    return TableOf(caption, "By", result, rows, tuple(columns))
+    columns = []
+    for d in days:
+        columns.append(ColumnOf(f"day_{d:g}", "Share", "percent", ("estimate", "n"), {"time": d}, over=f"by day {d:g}"))
+        columns.append(ColumnOf(f"day_{d:g}_ci", "", "percent_interval", ("lower", "upper", "n"), {"time": d}, over=f"by day {d:g}"))
+    return TableOf(caption, "Ending", result, rows_of(names, "cause"), tuple(columns))
+
+
+def _risk_layout(days: list[float]) -> TableOf:
+    """How many runs were on support and observed just before each day: what the shares of that day stand on."""
+    rows = tuple(RowOf(f"day_{d:g}", f"day {d:g}", {"time": d, "cause": "still supported"}) for d in days)
+    columns = (ColumnOf("day", "Day", "time", ("time",)), ColumnOf("at_risk", "Runs at risk", "count", ("at_risk",)))
+    return TableOf("Runs at risk, by day", "Just before", "curve", rows, columns)
 
 
 def _after_weaning(cohort: Cohort) -> Result:

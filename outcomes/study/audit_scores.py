@@ -17,7 +17,7 @@ from outcomes.study.answer import Answer, ColumnOf, RowOf, TableOf
 from outcomes.study.audit_data import Audit
 from outcomes.study.shape import COUNTED, counted, slug
 
-_COUNTS = ["group", "runs", "eligible", "not_eligible", "not_judged", "complete", "bounded", "lacking", "lowest", "median", "highest"]
+_COUNTS = ["group", "runs", "eligible", "not_eligible", "not_judged", "complete", "bounded", "asked", "lacking", "lowest", "median", "highest"]
 
 
 def score_answers(audit: Audit, keys: list[str]) -> dict[str, pd.DataFrame]:
@@ -77,11 +77,11 @@ def _title(key: str) -> str:
 
 def _count_row(key: str, answer: pd.DataFrame) -> dict[str, object]:
     eligible = answer["eligible"].astype("string")
-    yes = answer[eligible == "yes"]
-    complete = yes["total"].notna()
-    totals = yes.loc[complete, "total"].astype("Float64")
+    asked = answer[eligible != "no"]
+    complete = asked["total"].notna()
+    totals = asked.loc[complete, "total"].astype("Float64")
     row: dict[str, object] = {
-        "group": key, "runs": len(answer), "eligible": len(yes), "not_eligible": int((eligible == "no").sum()),
+        "group": key, "runs": len(answer), "eligible": int((eligible == "yes").sum()), "asked": len(asked), "not_eligible": int((eligible == "no").sum()),
         "not_judged": int((eligible == "unknown").sum()), "complete": int(complete.sum()),
         "bounded": int((~complete).sum()), "lacking": int((answer["missing"].astype("string").fillna("") != "").sum()),
     }  # fmt: skip
@@ -96,7 +96,7 @@ def _columns() -> tuple[ColumnOf, ...]:
         ColumnOf("eligible", "Eligible", "x_of_n", ("eligible", "runs")),
         ColumnOf("not_eligible", "Not eligible", "count", ("not_eligible",)),
         ColumnOf("not_judged", "Cannot be judged", "count", ("not_judged",)),
-        ColumnOf("complete", "Complete, of those eligible", "x_of_n", ("complete", "eligible")),
+        ColumnOf("complete", "Complete, of those eligible or not judged", "x_of_n", ("complete", "asked")),
         ColumnOf("bounded", "Bounded only", "count", ("bounded",)),
         ColumnOf("total", "Total, median (25th to 75th percentile)", "quartiles_0", ("median", "lowest", "highest")),
     )
@@ -139,8 +139,10 @@ def _expected(audit: Audit, answers: dict[str, pd.DataFrame]) -> Result:
         if not usable_for_expectation(key, checks).is_usable or not _predicts_discharge(key):
             continue
         known = answer["predicted"].notna() & alive.reindex(answer.index).notna()
+        if not known.any():
+            continue
         predicted = answer.loc[known, "predicted"].astype(float)
-        higher_is_death = "death" in str(answer.loc[known, "predicted_outcome"].astype("string").iloc[0]).lower() if known.any() else False
+        higher_is_death = "death" in str(answer.loc[known, "predicted_outcome"].astype("string").iloc[0]).lower()
         expected = float((1 - predicted).sum() if higher_is_death else predicted.sum())
         observed = int(alive.reindex(answer.index)[known].astype(bool).sum())
         row: dict[str, object] = {"group": key, "events": observed, "expected": expected, "at_risk": int(known.sum()), "outside": int((~known).sum())}
