@@ -84,7 +84,7 @@ def ends(key, options, run):
     return float(row["total_low"]), float(row["total_high"]), row
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(run_and_gaps())
 def test_a_complete_run_agrees_with_a_plain_reading_of_the_table(case):
     key, options, run, _ = case
@@ -94,7 +94,7 @@ def test_a_complete_run_agrees_with_a_plain_reading_of_the_table(case):
     assert row["missing"] == ""
 
 
-@settings(max_examples=150, deadline=None)
+@settings(max_examples=100, deadline=None)
 @given(run_and_gaps())
 def test_the_total_lies_inside_the_bounds_whatever_was_missing_and_information_narrows(case):
     key, options, run, lost = case
