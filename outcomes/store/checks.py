@@ -79,7 +79,11 @@ def run_checks(con: duckdb.DuckDBPyConnection, carried: frozenset[str]) -> list[
 
 
 def refresh_set_aside(con: duckdb.DuckDBPyConnection) -> None:
-    con.execute("create or replace table work.set_aside as select distinct run_key from work.finding where effect = 'run'")
+    """Runs that are refused whole. A row without a key is refused with its finding, but it names no run."""
+    con.execute(
+        "create or replace table work.set_aside as "
+        "select distinct run_key from work.finding where effect = 'run' and run_key is not null"
+    )
 
 
 def _count(con: duckdb.DuckDBPyConnection, query: str) -> int:

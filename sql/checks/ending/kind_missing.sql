@@ -2,5 +2,5 @@
 -- column: support_end.kind
 -- needs: 
 -- of: support_end
--- rule: support ended, but it is not said how
-select run_key, sheet_no, line from candidate.support_end where end_h is not null and end_kind is null
+-- rule: something is said of the end of support, but not how it ended
+select run_key, sheet_no, line from candidate.support_end where end_kind is null
