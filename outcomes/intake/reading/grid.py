@@ -100,7 +100,10 @@ class Row:
 
 def is_blank(cells: Iterable[Cell]) -> bool:
     """No cell holds anything but spaces."""
-    return all(cell is None or (isinstance(cell, str) and not cell.strip()) for cell in cells)
+    for cell in cells:  # noqa: SIM110 (met by every row; a loop takes half the time)
+        if cell is not None and (not isinstance(cell, str) or cell.strip()):
+            return False
+    return True
 
 
 def text_of(cell: Cell) -> str:
