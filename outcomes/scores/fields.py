@@ -114,7 +114,7 @@ _CHOICES = (
         "choice",
         choices=("out_of_hospital", "emergency_department", "in_hospital", "none"),
     ),
-    Field("lv_function", "choice", choices=("mild_or_better", "moderate", "severe")),
+    Field("lv_function", "choice", choices=("normal", "mild", "moderate", "severe")),
     Field("shock_stage", "choice", choices=("A", "B", "C", "D", "E")),
 )
 

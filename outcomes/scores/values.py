@@ -47,9 +47,12 @@ def truth(series: pd.Series, name: str) -> Codes:
 
 
 def choice(series: pd.Series, field: Field, name: str) -> Codes:
-    """Place of each word in the field's list; 'unknown' and missing are −1, any other word is refused."""
+    """Place of each word in the field's list; 'unknown', 'other' and missing are −1, another word is refused.
+
+    'other' is a recorded answer that no table gives points to, so the item stays open, as if unknown.
+    """
     codes, uniques = pd.factorize(series.astype(object) if series.dtype != "category" else series)
-    place = {word: n for n, word in enumerate(field.choices)} | {"unknown": -1}
+    place = {word: n for n, word in enumerate(field.choices)} | {"unknown": -1, "other": -1}
     table = np.full(len(uniques) + 1, -1, dtype=np.int8)
     for n, word in enumerate(uniques):
         if word not in place:

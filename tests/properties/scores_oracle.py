@@ -52,7 +52,9 @@ def item_points(item, run, chosen):
     if "yes" in item:
         return item["yes"] if run[item["input"]] else item["no"]
     if "values" in item:
-        return next(row["points"] for row in item["values"] if row["is"] == run[item["input"]])
+        return next(
+            r["points"] for r in item["values"] if run[item["input"]] in r.get("is_any", [r.get("is")])
+        )
     if "cases" in item:
         for row in (row for row in item["cases"] if in_force(row, chosen)):
             if all(_holds(test, run) for test in row["when"]):

@@ -51,6 +51,7 @@ def test_an_eligible_complete_run():
         ({"nth_run": 2}, "no", "first run"),
         ({"arrest_location": None}, "unknown", "arrest_location"),
         ({"arrest_location": "unknown"}, "unknown", "arrest_location"),
+        ({"arrest_location": "other"}, "unknown", "arrest_location"),
         ({"arrest_location": None, "nth_run": 2}, "no", "first run"),
         ({"age_years": np.nan}, "unknown", "age_years"),
     ],
@@ -221,3 +222,9 @@ def test_the_work_is_done_on_whole_columns():
 def test_age_counts_in_completed_years(age, points):
     """A convention: the printed brackets (18-38, 39-52) presuppose whole years."""
     assert tips(age_years=age)["total"] == 3 + points
+
+
+def test_a_recorded_sex_that_no_table_gives_points_to_leaves_the_item_open():
+    found = compute("pc_ecmo", pd.DataFrame({"sex": ["other", "unknown", "female"]}))
+    assert (found["total_high"] - found["total_low"]).tolist() == [17, 17, 16]
+    assert "sex" in found["missing"].iloc[0] and "sex" not in found["missing"].iloc[2]

@@ -187,3 +187,18 @@ def test_shock_stage_is_the_clinicians_unless_asked():
     assert answer("shock_stage", run)["class"] == "C"
     computed = answer("shock_stage", run, options={"stage_source": "computed"})
     assert computed["class"] == "E" and computed["total"] == 5
+
+
+def test_be_alive_mildly_impaired_or_better_takes_one_away():
+    totals = compute(
+        "be_alive",
+        pd.DataFrame({"lv_function": ["normal", "mild", "moderate", "severe"]}),
+        declared={
+            "base_excess_mmol_l": 0.0,
+            "age_years": 60,
+            "lactate_mmol_l": 1.0,
+            "was_ventilated": False,
+            "had_arrest": False,
+        },
+    )["total"]
+    assert totals.tolist() == [-1, -1, 1, 3]
