@@ -23,7 +23,7 @@ from outcomes.store.connect import SCHEMA_VERSION, connect, harden, open_for_rea
 from outcomes.store.ledger import verify, write_states
 from outcomes.store.linkfile import CalendarEntry, calendar_bytes, identities_bytes, read_calendar, read_identities
 from outcomes.store.merge import Merge, compare, note_carried_before
-from outcomes.store.recover import Places, recover
+from outcomes.store.recover import Places, pending_mark, recover
 from outcomes.store.run_order import run_order
 from outcomes.store.schema import create_store
 from outcomes.store.settle import Counts, apply_effects, list_findings, settle_keys, settle_rows
@@ -110,9 +110,17 @@ class _Job:
         self.con = connect(folder / "bench.duckdb", read_only=False, spill=folder)
         if batch:
             self.con.execute("attach '" + str(request.places.store).replace("'", "''") + "' as old (read_only)")
-        self.identities = read_identities(request.places.link if batch else None, request.new_key)
+        self.identities = read_identities(self._known_link(), request.new_key)
         self.calendar = read_calendar(request.places.calendar if request.places.calendar.exists() and batch else None)
         self.intake: Intake | None = None
+
+    def _known_link(self) -> Path | None:
+        """The link file of this store; or one whose store is gone: the same people then get the same keys again."""
+        link = self.request.places.link
+        if not link.exists():
+            return None
+        files.require_private(link, "LINK")
+        return link
 
     def close(self) -> None:
         if self.intake is not None:
@@ -207,12 +215,14 @@ class _Job:
         _verify_new(new)
         files.fsync_file(new)
         places = self.request.places
+        files.write_private(pending_mark(places.store), b"")
         files.put_in_place(link, places.link)
         if calendar is not None:
             files.put_in_place(calendar, places.calendar)
         files.put_in_place(new, places.store)
         for path in (places.link, places.calendar, places.store):
             files.drop_before(path)
+        pending_mark(places.store).unlink()
 
     def _companions(self) -> tuple[Path, Path | None]:
         """New link file and calendar file in the work folder; identifiers of rows that were not stored are forgotten."""

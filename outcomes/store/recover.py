@@ -7,7 +7,7 @@ from pathlib import Path
 
 from outcomes.errors import StoreProblem
 from outcomes.store.connect import connect, open_for_reading
-from outcomes.store.files import BEFORE, drop_before, sweep
+from outcomes.store.files import drop_before, sweep
 from outcomes.store.ledger import batch_number, verify
 from outcomes.store.linkfile import CALENDAR, LINK, generation_at, require_unchanged
 
@@ -54,17 +54,31 @@ def recover(places: Places) -> int:
         )
     sweep(places.store)
     batch = current_batch(places)
-    for path, code in ((places.link, LINK), (places.calendar, CALENDAR)):
-        right = generation_at(path, code, batch)
-        if right is not None and right != path:
-            right.replace(path)
-        elif right is None and path.exists():
-            path.unlink()  # written by a first import that never reached its store
-        drop_before(path)
-    Path(str(places.store) + BEFORE).unlink(missing_ok=True)
+    if pending_mark(places.store).exists():
+        for path, code in ((places.link, LINK), (places.calendar, CALENDAR)):
+            _step_back(path, code, batch)
+        drop_before(places.store)
+        pending_mark(places.store).unlink()
     if batch:
         _require_companions(places)
     return batch
+
+
+def pending_mark(store: Path) -> Path:
+    """An empty file that exists while the three files are being replaced: only then may a newer companion be swept.
+
+    Without it a link file whose store is gone belongs to a lost store, and is kept: nobody may lose it."""
+    return store.parent / f".{store.name}.pending"
+
+
+def _step_back(path: Path, code: str, batch: int) -> None:
+    """Undo what an interrupted import put in place beyond the store's batch."""
+    right = generation_at(path, code, batch)
+    if right is not None and right != path:
+        right.replace(path)
+    elif right is None and path.exists():
+        path.unlink()  # written by a first import that never reached its store
+    drop_before(path)
 
 
 def _require_companions(places: Places) -> None:
