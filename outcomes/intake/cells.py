@@ -26,6 +26,10 @@ SCHEMA = pa.schema(
 )
 
 
+class WrongParts(str):
+    """Text of a cell that does not have the declared number of parts."""
+
+
 def key_text(cell: Cell) -> str:
     """An identifier is text: a number typed by a spreadsheet gives its shortest text."""
     if cell is None or isinstance(cell, ErrorCell):
@@ -41,6 +45,8 @@ def run_numbers(grid: Grid, sheet: Sheet, places: dict[str, int], numbers: RunNu
     """Run number of every row; None where the key is empty or damaged."""
     persons = _joined(grid, sheet.person, places) if sheet.person else [None] * len(grid.lines)
     runs = _joined(grid, sheet.run, places) if sheet.run else _attempts(persons, numbers)
+    if sheet.one_run_each:
+        persons = [None if run is None else SEPARATOR.join(("run", run)) for run in runs]
     found: list[int | None] = []
     for run, person in zip(runs, persons, strict=True):
         if run is None or (sheet.person and person is None):
@@ -86,7 +92,7 @@ def cell_table(
         if column.join:
             raw = _join_cells(raw, [grid.cells[places[j]] for j in column.join])
         for part, piece_no in enumerate(piece_numbers):
-            cells = _split_cells(raw, column.split, part, len(piece_numbers)) if column.split else raw
+            cells = _split_cells(raw, column, part) if column.split else raw
             arrays = [sheets, line, runs, pa.array([piece_no] * n, pa.int32()), *_typed(cells)]
             tables.append(pa.Table.from_arrays(arrays, schema=SCHEMA))
     return pa.concat_tables(tables) if tables else SCHEMA.empty_table()
@@ -113,6 +119,8 @@ def _typed(cells: Sequence[Cell]) -> list[pa.Array]:
 
 
 def _one(cell: Cell) -> tuple[str | None, float | None, dt.datetime | None, str | None]:
+    if isinstance(cell, WrongParts):
+        return str(cell), None, None, "parts"
     if cell is None or isinstance(cell, str):
         return cell, None, None, None
     if isinstance(cell, Number):
@@ -145,14 +153,16 @@ def _join_cells(first: Sequence[Cell], others: Sequence[Sequence[Cell]]) -> list
     return out
 
 
-def _split_cells(cells: Sequence[Cell], mark: str, part: int, parts: int) -> list[Cell]:
-    """Part number `part` of cells such as 92/54. A cell with another number of parts stays whole, so that it is
-    refused as what it is."""
+def _split_cells(cells: Sequence[Cell], column: Column, part: int) -> list[Cell]:
+    """Part number `part` of cells such as 92/54. A cell with another number of parts is marked as such, unless it is
+    a word of the mapping: a single 92 must not become both pressures."""
+    words = {*column.missing, *column.codes}
     out: list[Cell] = []
     for cell in cells:
-        if isinstance(cell, str) and cell.strip():
-            pieces = cell.split(mark)
-            out.append(pieces[part].strip() if len(pieces) == parts else cell)
-        else:
+        text = key_text(cell) if isinstance(cell, (str, Number)) else ""
+        if not text or text in words:
             out.append(cell)
+            continue
+        pieces = text.split(column.split)
+        out.append(pieces[part].strip() if len(pieces) == len(column.pieces) else WrongParts(text))
     return out

@@ -19,7 +19,7 @@ class Identities:
     new_key: Callable[[], str]
     persons: dict[str, dict[str, str]] = field(default_factory=dict)
     runs: dict[str, dict[str, str]] = field(default_factory=dict)
-    added: int = 0
+    fresh: set[str] = field(default_factory=set)
 
     def __repr__(self) -> str:
         return "Identities(***)"
@@ -30,15 +30,18 @@ class Identities:
     def run(self, space: str, identifier: str) -> str:
         return self._key(self.runs.setdefault(space, {}), identifier)
 
-    def knows_run(self, space: str, identifier: str) -> bool:
-        return identifier in self.runs.get(space, {})
+    def forget(self, kept: set[str]) -> None:
+        """Drop identifiers that were met for the first time and whose rows were not stored."""
+        for space in (*self.persons.values(), *self.runs.values()):
+            for identifier in [i for i, key in space.items() if key in self.fresh and key not in kept]:
+                del space[identifier]
 
     def _key(self, table: dict[str, str], identifier: str) -> str:
         key = table.get(identifier)
         if key is None:
             key = self.new_key()
             table[identifier] = key
-            self.added += 1
+            self.fresh.add(key)
         return key
 
 
@@ -52,20 +55,25 @@ class RunNumbers:
     run_keys: list[str] = field(default_factory=list)
     person_keys: list[str | None] = field(default_factory=list)
     attempts: dict[str, int] = field(default_factory=dict)
+    disputed: set[int] = field(default_factory=set)
 
     def __repr__(self) -> str:
         return f"RunNumbers({len(self.run_keys)} runs)"
 
     def number(self, run: str, person: str | None) -> int:
-        """Number of this run; the first row that names its person settles it."""
+        """Number of this run; the first row that names its person settles it, another person makes it disputed."""
         found = self.number_of.get(run)
         if found is None:
             found = len(self.run_keys)
             self.number_of[run] = found
             self.run_keys.append(self.identities.run(self.space, run))
             self.person_keys.append(None)
-        if person is not None and self.person_keys[found] is None:
-            self.person_keys[found] = self.identities.person(self.space, person)
+        if person is not None:
+            key = self.identities.person(self.space, person)
+            if self.person_keys[found] is None:
+                self.person_keys[found] = key
+            elif self.person_keys[found] != key:
+                self.disputed.add(found)
         return found
 
     def fill_persons(self, known: Mapping[str, str]) -> None:

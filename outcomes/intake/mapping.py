@@ -77,7 +77,8 @@ class Column:
 
 @dataclass(frozen=True)
 class Sheet:
-    """One table of a file. rows: first and last sheet row of a code list, inclusive."""
+    """One table of a file. rows: first and last sheet row of a code list, inclusive. one_run_each: the source names no
+    persons, and every run is taken for another one."""
 
     key: str
     position: int
@@ -90,6 +91,7 @@ class Sheet:
     code: str = ""
     meaning: str = ""
     rows: tuple[int, int] | None = None
+    one_run_each: bool = False
 
     @property
     def listed(self) -> frozenset[str]:

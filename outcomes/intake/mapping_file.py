@@ -6,7 +6,6 @@ import hashlib
 import re
 import tomllib
 from collections.abc import Callable
-from datetime import date
 from typing import Any
 
 from outcomes.errors import UsageError
@@ -113,10 +112,17 @@ def _check_whole(files: tuple[File, ...], problems: Problems) -> None:
         for column in sheet.columns:
             if column.codes_from and column.codes_from not in lists:
                 problems.add(f"column {column.header}", "codes_from names no sheet with row_is = \"code list\"")
+    _check_shared(sheets, problems)
     fields = {p.field.name for s in sheets if s.row_is == "run" for c in s.columns for p in c.pieces}
     if any(s.row_is == "run" for s in sheets) and "support_run.start" not in fields:
         problems.warn_start_missing()
 
 
-def year_of(day: date) -> int:
-    return day.year
+def _check_shared(sheets: list[Sheet], problems: Problems) -> None:
+    """Two sheets with one row a run may fill the same record table, but not the same field of it."""
+    given: dict[tuple[str, str, str], Sheet] = {}
+    for sheet in (s for s in sheets if s.row_is == "run"):
+        for piece in (p for c in sheet.columns for p in c.pieces):
+            key = (piece.field.table, piece.field.column, piece.window + piece.site)
+            if given.setdefault(key, sheet) is not sheet:
+                problems.add(f"sheet {sheet.key}", f"gives {piece.field.name}, which the sheet {given[key].key} gives already")

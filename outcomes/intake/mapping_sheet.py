@@ -35,6 +35,7 @@ def read_sheet(table: Table, defaults: dict[str, Any], source: Source) -> Sheet:
         person=table.texts("person", ()),
         leave_out=table.texts("leave_out", ()),
         columns=columns,
+        one_run_each=table.choice("persons", ("", "one run each"), "") == "one run each",
     )
     _check_sheet(sheet, table, blanks, source)
     table.done()
@@ -182,6 +183,11 @@ def _check_sheet(sheet: Sheet, table: Table, blanks: dict[str, str], source: Sou
             table.problem("blank", f"{name} is no mapped column")
     if not sheet.run and sheet.row_is != "attempt":
         table.problem("run", "must name at least one column")
+    starts = any(p.field.name == "support_run.start" for c in sheet.columns for p in c.pieces)
+    if starts and not sheet.person and not sheet.one_run_each:
+        table.problem("person", 'names no column; if the source has no persons, say persons = "one run each"')
+    if sheet.person and sheet.one_run_each:
+        table.problem("persons", "does not go with columns that name a person")
     _check_fields(sheet, table, source)
 
 

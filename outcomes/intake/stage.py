@@ -128,8 +128,9 @@ class Staging:
         targets: dict[str, set[str]] = {}
         for column, _ in self.columns[sheet_no]:
             for piece in column.pieces:
+                columns = targets.setdefault(piece.field.table, set())
                 if piece.field.column != "start":
-                    targets.setdefault(piece.field.table, set()).add(piece.field.column)
+                    columns.add(piece.field.column)
         sheet = next(s for n, _, s in sheets_of(self.mapping) if n == sheet_no)
         queries: list[tuple[str, str]] = []
         for table in sorted(targets):
@@ -145,8 +146,8 @@ class Staging:
 
 def _wide(table: str, columns: list[str]) -> str:
     """One row a source row; columns come from our own vocabulary, so quoting them is safe."""
-    picks = ", ".join(f"""first(given) filter (where target_column = '{c}') as "{c}" """ for c in columns)
-    return f"""select run_no, sheet_no, line, {picks}
+    picks = "".join(f""", first(given) filter (where target_column = '{c}') as "{c}" """ for c in columns)
+    return f"""select run_no, sheet_no, line{picks}
     from (select *, coalesce(coded, {_NUMBER_TEXT}) as given from staging.value
           where target_table = '{table}' and run_no is not null and defect is null)
     group by run_no, sheet_no, line"""
@@ -197,7 +198,8 @@ def _with_dates(table: str, query: str, targets: dict[str, set[str]]) -> str:
         status = "t.vital_status" if "vital_status" in columns else "null::varchar"
         contact = "t.contact_h::double" if "contact_h" in columns else "null::double"
         death = "t.death_h::double" if "death_h" in columns else "null::double"
-        rest = "t.* exclude (" + ", ".join(sorted(columns & {"contact_h", "death_h", "vital_status"})) + ")"
+        derived = ", ".join(sorted(columns & {"contact_h", "death_h", "vital_status"}))
+        rest = f"t.* exclude ({derived})" if derived else "t.*"
         dead = f"({status} = 'dead' or {death} is not null)"
         return f"""select {rest}, case when {dead} then 'dead' else {status} end as vital_status,
             case when {dead} then coalesce({death}, {contact}) end as death_h,

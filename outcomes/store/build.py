@@ -30,7 +30,7 @@ def _fill_table(con: duckdb.DuckDBPyConnection, table: str, old: bool) -> None:
     parts = [f"select {picks} from candidate.{table} where line is not null and run_key in ({taken})"]
     if old:
         if table == "missing_value":
-            keep = f"""not (run_key in ({taken}) and field in (select field from candidate.missing_value where line is not null))"""
+            keep = f"not (run_key in ({taken}) and field in (select field from work.spoken_field))"
         else:
             keep = f"run_key not in ({taken})"
         parts.append(f"select {picks} from old.record.{table} where {keep}")
@@ -52,13 +52,15 @@ def _content_order(table: str) -> str:
 
 
 def _fill_person(con: duckdb.DuckDBPyConnection, old: bool) -> None:
-    stored = "select person_key, sex_recorded, height_cm, order_is_uncertain, 1 as age from old.record.person" if old else None
-    given = "select person_key, sex_recorded, height_cm, order_is_uncertain, 0 as age from candidate.person where line is not null or sex_recorded is null"
+    """What the first run of a person says of her stands before what is stored, and that before what later runs say."""
+    stored = "select person_key, sex_recorded, height_cm, order_is_uncertain, 1 as age, 1 as uncertain_age from old.record.person" if old else None
+    given = """select person_key, sex_recorded, height_cm, order_is_uncertain, case when decides then 0 else 2 end as age, 0 as uncertain_age
+        from candidate.person where run_key is not null"""
     rows = f"{given} union all {stored}" if stored else given
     con.execute(
         f"""insert into new.record.person by name
         select person_key, arg_min(sex_recorded, age) as sex_recorded, arg_min(height_cm, age) as height_cm,
-          arg_min(order_is_uncertain, age) as order_is_uncertain
+          arg_min(order_is_uncertain, uncertain_age) as order_is_uncertain
         from ({rows}) where person_key in (select person_key from new.record.support_run)
         group by person_key order by person_key"""
     )
@@ -111,8 +113,8 @@ def _fill_source(con: duckdb.DuckDBPyConnection, mapping: Mapping, old: bool) ->
                 [s.key, kind, entry.events_kept, entry.looked_until_h, entry.definition, entry.valid_from_year],
             )
     if old:
-        for table in ("source", "complication_coverage"):
-            con.execute(f"insert into new.record.{table} select * from old.record.{table} where source_key <> ?", [s.key])
+        con.execute("insert into new.record.source select * from old.record.source where source_key <> ?", [s.key])
+        con.execute("insert into new.record.complication_coverage select * from old.record.complication_coverage on conflict do nothing")
         con.execute(
             """update new.record.source n set period_from_year = least(n.period_from_year, o.period_from_year),
               period_to_year = greatest(n.period_to_year, o.period_to_year)

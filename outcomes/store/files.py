@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import errno
 import fcntl
 import hashlib
 import os
@@ -15,6 +16,7 @@ from pathlib import Path
 from outcomes.errors import StoreBusy, StoreProblem
 
 BEFORE = ".before"
+NEW = ".new"
 
 
 def sha256_of(path: Path) -> str:
@@ -58,6 +60,26 @@ def put_in_place(new: Path, path: Path) -> None:
         os.link(path, before)
     os.replace(new, path)
     fsync_folder(path.parent)
+
+
+def beside(path: Path) -> Path:
+    """Where the next generation of a file is written: on the same disk, whatever disk that is."""
+    return Path(str(path) + NEW)
+
+
+@contextmanager
+def told_by_the_system() -> Iterator[None]:
+    """A step that the operating system refuses becomes an error of ours, without the file name in it."""
+    try:
+        yield
+    except OSError as error:
+        if error.errno in (errno.ENOSPC, errno.EDQUOT, errno.EFBIG):
+            code, what, todo = "STORE.DISK-FULL", "the disk is full", "make room; the store has not been changed"
+        elif error.errno in (errno.EACCES, errno.EPERM, errno.EROFS):
+            code, what, todo = "STORE.NOT-WRITABLE", "a file or its folder may not be written", "look at its permissions"
+        else:
+            code, what, todo = "STORE.FILE", "the operating system refused a step", "run the command again; it cleans up first"
+        raise StoreProblem(code, what, todo=todo) from None
 
 
 def drop_before(path: Path) -> None:

@@ -10,7 +10,7 @@ from pathlib import Path
 
 import duckdb
 
-from outcomes.errors import DataRefused
+from outcomes.errors import DataRefused, UsageError
 from outcomes.findings import Finding, in_order
 from outcomes.intake.identify import Identities
 from outcomes.intake.mapping import Mapping
@@ -23,7 +23,7 @@ from outcomes.store.connect import SCHEMA_VERSION, connect, harden, open_for_rea
 from outcomes.store.ledger import verify, write_states
 from outcomes.store.linkfile import CalendarEntry, calendar_bytes, identities_bytes, read_calendar, read_identities
 from outcomes.store.merge import Merge, compare, note_carried_before
-from outcomes.store.recover import Places, pending_mark, recover
+from outcomes.store.recover import Places, mark_of, pending_mark, recover
 from outcomes.store.run_order import run_order
 from outcomes.store.schema import create_store
 from outcomes.store.settle import Counts, apply_effects, list_findings, settle_keys, settle_rows
@@ -68,11 +68,11 @@ def run_import(request: Request) -> Imported:
     """
     os.umask(0o077)
     store = request.places.store
-    with files.writer_lock(store):
+    with files.told_by_the_system(), files.writer_lock(store):
         batch = recover(request.places)
-        hashes = [(key, files.sha256_of(path), path.stat().st_size) for key, path in sorted(request.paths.items())]
+        hashes = _hashes(request.paths)
         known = _already(store, batch, hashes, request.mapping.digest)
-        if known and request.store_it:
+        if known and request.store_it and not request.replace:
             return Imported(known, False, Counts(0, 0, 0, 0), (), (), Merge(0, 0, 0), already=known)
         with files.work_folder(store) as folder:
             job = _Job(request, folder, batch)
@@ -82,6 +82,13 @@ def run_import(request: Request) -> Imported:
                 raise translate(error) from error
             finally:
                 job.close()
+
+
+def _hashes(paths: dict[str, Path]) -> list[tuple[str, str, int]]:
+    try:
+        return [(key, files.sha256_of(path), path.stat().st_size) for key, path in sorted(paths.items())]
+    except OSError:
+        raise UsageError("USAGE.FILE", "a file of the source cannot be read", todo="look at its permissions") from None
 
 
 def _already(store: Path, batch: int, hashes: list[tuple[str, str, int]], mapping_sha256: str) -> int:
@@ -126,6 +133,8 @@ class _Job:
         if self.intake is not None:
             self.intake.close()
         self.con.close()
+        for path in (self.request.places.link, self.request.places.calendar):
+            files.beside(path).unlink(missing_ok=True)
 
     def run(self, hashes: list[tuple[str, str, int]]) -> Imported:
         source = self.request.mapping.source
@@ -149,11 +158,12 @@ class _Job:
     def _stage(self) -> Workbench:
         bench = Workbench(self.con)
         starts = {key: entry.start_utc for key, entry in self.calendar.items()}
+        stored, accepted = self._stored_runs(), self._accepted_runs()
+        timed = {k: s for k, s in starts.items() if k in accepted}
         openers = {key: (lambda p=path: p.open("rb")) for key, path in self.request.paths.items()}
-        self.intake = take_in(self.request.mapping, openers, self.identities, starts, bench.sink, self.request.progress)
+        self.intake = take_in(self.request.mapping, openers, self.identities, timed, bench.sink, self.request.progress)
         staging = self.intake.staging.con
         require_units(staging)
-        stored = self._stored_runs()
         self.intake.numbers.fill_persons(stored)
         bench.receive(self.intake)
         bench.copy_order(run_order(self.intake, stored, starts, staging))
@@ -166,6 +176,12 @@ class _Job:
         return dict(self.con.execute(
             "select run_key, person_key from old.record.support_run union all select run_key, person_key from old.record.set_aside_run"
         ).fetchall())  # fmt: skip
+
+    def _accepted_runs(self) -> frozenset[str]:
+        """Runs with data in the store: only they can be spoken of without a start of their own."""
+        if not self.old_batch:
+            return frozenset()
+        return frozenset(k for (k,) in self.con.execute("select run_key from old.record.support_run").fetchall())
 
     def _note_calendar(self, staging: duckdb.DuckDBPyConnection) -> None:
         """Starts of this batch; only accepted runs are kept when the file is written."""
@@ -215,7 +231,7 @@ class _Job:
         _verify_new(new)
         files.fsync_file(new)
         places = self.request.places
-        files.write_private(pending_mark(places.store), b"")
+        files.write_private(pending_mark(places.store), mark_of(self.batch, link, calendar))
         files.put_in_place(link, places.link)
         if calendar is not None:
             files.put_in_place(calendar, places.calendar)
@@ -231,17 +247,19 @@ class _Job:
             """select run_key from new.record.support_run union all select run_key from new.record.set_aside_run
             union all select attempt_key from new.record.cannulation_attempt"""
         ).fetchall()}  # fmt: skip
-        for table in self.identities.runs.values():
-            for identifier in [i for i, key in table.items() if key not in kept]:
-                del table[identifier]
-        link = self.folder / "link"
+        people = {k for (k,) in self.con.execute(
+            """select person_key from new.record.support_run union all select person_key from new.record.set_aside_run
+            union all select person_key from new.record.cannulation_attempt"""
+        ).fetchall()}  # fmt: skip
+        self.identities.forget(kept | people)
+        link = files.beside(self.request.places.link)
         files.write_private(link, identities_bytes(self.identities, self.batch))
         if self.request.mapping.source.calendar == "decline" and not self.calendar:
             return link, None
         entries = dict(self.calendar)
         if self.request.mapping.source.calendar == "keep":
             entries.update({k: e for k, e in self.fresh.items() if k in kept})
-        calendar = self.folder / "calendar"
+        calendar = files.beside(self.request.places.calendar)
         files.write_private(calendar, calendar_bytes(entries, self.batch))
         return link, calendar
 

@@ -1,7 +1,6 @@
 """The link file (identifiers and their surrogates) and the calendar file (when each run began): both outside the store.
 
-Both carry the number of the batch that wrote them. A number above the store's means that an import was interrupted:
-the generation before is the right one.
+Both carry the number of the batch that wrote them; which of them belong to a store is said by its ledger.
 """
 
 from __future__ import annotations

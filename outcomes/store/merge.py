@@ -15,15 +15,17 @@ from outcomes.store.schema import record_columns, tables_by_run, value_columns
 
 @dataclass(frozen=True)
 class Merge:
-    """Runs of the batch by what happens to them."""
+    """Runs of the batch by what happens to them. beside_runs: attempts and declarations of the source that are new or
+    changed."""
 
     new: int
     unchanged: int
     changed: int
+    beside_runs: int = 0
 
     @property
     def nothing_new(self) -> bool:
-        return self.new == 0 and self.changed == 0
+        return self.new == 0 and self.changed == 0 and self.beside_runs == 0
 
 
 def row_text(table: str) -> str:
@@ -46,9 +48,11 @@ def compare(con: duckdb.DuckDBPyConnection, mapping: Mapping, *, old: bool, repl
     _carried(con, mapping)
     for table in merged_tables():
         _compare_table(con, table, old)
+    beside = 0
     if old:
-        _compare_source(con, mapping, replace)
-    merge = _count(con)
+        _compare_persons(con)
+        beside = _compare_source(con, mapping, replace) + _compare_attempts(con, replace)
+    merge = _count(con, beside)
     if merge.changed and not replace:
         findings = _conflicts(con, batch)
         raise DataRefused(
@@ -72,6 +76,12 @@ def _carried(con: duckdb.DuckDBPyConnection, mapping: Mapping) -> None:
           union select sheet_no, 'missing_value' from work.sheet_info where row_is = 'run'
         ) t using (sheet_no) where t.table_name not in ('person', 'cannulation_attempt')"""
     )
+    con.execute(
+        """create or replace table work.spoken_field as
+        select case when target_table = 'measurement' then field || '.' || window_label else field end as field
+        from work.piece_info join work.sheet_info using (sheet_no) where row_is = 'run'
+        union select field from candidate.missing_value where line is not null"""
+    )
     if mapping.source.extent == "whole":
         con.execute(
             """insert into work.carried
@@ -91,8 +101,10 @@ def _compare_table(con: duckdb.DuckDBPyConnection, table: str, old: bool) -> Non
         else "select null::varchar as run_key, null::varchar as h limit 0"
     )
     if table == "missing_value" and old:
-        fields = "(select distinct c.field from candidate.missing_value c where c.line is not null)"
-        stored = f"select run_key, {hashed} as h from old.record.missing_value where run_key in (select run_key from work.carried) and field in {fields} group by run_key"
+        stored = (
+            f"select run_key, {hashed} as h from old.record.missing_value where run_key in (select run_key from work.carried) "
+            "and field in (select field from work.spoken_field) group by run_key"
+        )
     known = "select run_key from old.record.support_run" if old else "select null::varchar as run_key limit 0"
     con.execute(
         f"""insert into work.change
@@ -109,6 +121,41 @@ def _compare_table(con: duckdb.DuckDBPyConnection, table: str, old: bool) -> Non
     )
 
 
+def _compare_persons(con: duckdb.DuckDBPyConnection) -> None:
+    """Sex and height belong to the person; what a run other than the first says of them changes nothing."""
+    con.execute(
+        """insert into work.change
+        select n.run_key, 'person',
+          case when c.sex_recorded <> o.sex_recorded or c.height_cm <> o.height_cm then 'changed'
+               when (o.sex_recorded is null and c.sex_recorded is not null) or (o.height_cm is null and c.height_cm is not null)
+                 then 'new'
+               else 'same' end,
+          md5(concat_ws(chr(31), coalesce(o.sex_recorded, '~'), coalesce(o.height_cm::varchar, '~')))
+        from candidate.person c join old.record.person o using (person_key) join work.run_name n using (person_key)
+        where c.line is not null and c.decides and n.run_key = c.run_key and n.run_key not in (select run_key from work.set_aside)"""
+    )
+
+
+def _compare_attempts(con: duckdb.DuckDBPyConnection, replace: bool) -> int:
+    """How many attempts are new or changed; changed ones are refused unless `replace`."""
+    if not con.execute("select 1 from duckdb_tables() where schema_name = 'incoming' and table_name = 'cannulation_attempt'").fetchone():
+        return 0
+    row = con.execute(
+        """select count(*) filter (where o.attempt_key is null),
+          count(*) filter (where o.attempt_key is not null and (o.attempt_year is distinct from i.attempt_year or o.reason is distinct from i.reason))
+        from incoming.cannulation_attempt i join work.run_name n using (run_no)
+        left join old.record.cannulation_attempt o on o.attempt_key = n.run_key"""
+    ).fetchone()
+    new, changed = row or (0, 0)
+    if changed and not replace:
+        raise DataRefused(
+            "ROW.CONFLICT",
+            f"{changed} attempts are stored already, with other values",
+            todo="if the new values are right, import again with --replace",
+        )
+    return int(new + changed)
+
+
 def note_carried_before(con: duckdb.DuckDBPyConnection, source_key: str, old: bool) -> None:
     """work.carried_before(table_name): tables that earlier batches of this source carried."""
     query = (
@@ -123,34 +170,49 @@ def note_carried_before(con: duckdb.DuckDBPyConnection, source_key: str, old: bo
         con.execute("create or replace table work.carried_before (table_name varchar)")
 
 
-def _compare_source(con: duckdb.DuckDBPyConnection, mapping: Mapping, replace: bool) -> None:
+def _compare_source(con: duckdb.DuckDBPyConnection, mapping: Mapping, replace: bool) -> int:
+    """How many declarations of a known source are new or changed; changed ones are refused unless `replace`."""
     s = mapping.source
     row = con.execute(
         "select plan_written, vital_status_date, no_death_means, attempts from old.record.source where source_key = ?", [s.key]
     ).fetchone()
-    if row is not None and row != (s.plan_written, s.vital_status_date, s.no_death_means, s.attempts) and not replace:
+    if row is None:
+        return 0
+    given = {(k, e.valid_from_year): (e.events_kept, e.looked_until_h, e.definition) for e in s.coverage for k in e.kinds}
+    known = {
+        (kind, year): tuple(rest)
+        for kind, year, *rest in con.execute(
+            """select kind, valid_from_year, events_kept, looked_until_h, definition
+            from old.record.complication_coverage where source_key = ?""",
+            [s.key],
+        ).fetchall()
+    }
+    changed = int(row != (s.plan_written, s.vital_status_date, s.no_death_means, s.attempts))
+    changed += sum(known[key] != says for key, says in given.items() if key in known)
+    if changed and not replace:
         raise DataRefused(
             "SOURCE.CHANGED",
             "the mapping now declares another meaning of this source than at the last import",
             where=f"source {s.key}",
             todo="if that is right, import again with --replace; it changes how stored runs are read",
         )
+    return changed + len(given.keys() - known.keys())
 
 
-def _count(con: duckdb.DuckDBPyConnection) -> Merge:
+def _count(con: duckdb.DuckDBPyConnection, beside_runs: int) -> Merge:
     row = con.execute(
         """select count(*) filter (where state = 'new'), count(*) filter (where state = 'same'), count(*) filter (where state = 'changed')
         from (select run_key, case when bool_or(state = 'changed') then 'changed' when bool_or(state = 'new') then 'new' else 'same' end as state
               from work.change group by run_key)"""
     ).fetchone()
-    return Merge(*(int(v) for v in row)) if row else Merge(0, 0, 0)
+    return Merge(*(int(v) for v in row or (0, 0, 0)), beside_runs)
 
 
 def _conflicts(con: duckdb.DuckDBPyConnection, batch: int) -> list[Finding]:
     rows = con.execute(
         """select s.file_key, s.sheet_key, min(r.line), string_agg(distinct c.table_name, ', ' order by c.table_name)
         from work.change c join work.row r using (run_key) join work.sheet_info s using (sheet_no)
-        where c.state = 'changed' and r.state = 'accepted' and s.row_is = 'run'
+        where c.state = 'changed' and r.state = 'accepted'
         group by c.run_key, s.file_key, s.sheet_key order by all"""
     ).fetchall()
     return [

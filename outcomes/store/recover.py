@@ -7,9 +7,9 @@ from pathlib import Path
 
 from outcomes.errors import StoreProblem
 from outcomes.store.connect import connect, open_for_reading
-from outcomes.store.files import drop_before, sweep
+from outcomes.store.files import BEFORE, beside, drop_before, require_private, sha256_of, sweep
 from outcomes.store.ledger import batch_number, verify
-from outcomes.store.linkfile import CALENDAR, LINK, generation_at, require_unchanged
+from outcomes.store.linkfile import CALENDAR, LINK, require_unchanged
 
 
 @dataclass(frozen=True)
@@ -53,32 +53,46 @@ def recover(places: Places) -> int:
             todo="it was put aside with the ending .quarantine; run the command again to use the store as its ledger knows it",
         )
     sweep(places.store)
+    for path in (places.link, places.calendar):
+        beside(path).unlink(missing_ok=True)
     batch = current_batch(places)
-    if pending_mark(places.store).exists():
-        for path, code in ((places.link, LINK), (places.calendar, CALENDAR)):
-            _step_back(path, code, batch)
-        drop_before(places.store)
-        pending_mark(places.store).unlink()
+    mark = pending_mark(places.store)
+    if mark.exists():
+        _settle(places, mark.read_text("utf-8").split(), batch)
+        mark.unlink()
     if batch:
         _require_companions(places)
     return batch
 
 
 def pending_mark(store: Path) -> Path:
-    """An empty file that exists while the three files are being replaced: only then may a newer companion be swept.
+    """A file that exists while the three files are being replaced, and says which companions are the new ones.
 
-    Without it a link file whose store is gone belongs to a lost store, and is kept: nobody may lose it."""
+    Only those may be undone. A link file whose store is gone belongs to a lost store, and is kept: nobody may lose it.
+    """
     return store.parent / f".{store.name}.pending"
 
 
-def _step_back(path: Path, code: str, batch: int) -> None:
-    """Undo what an interrupted import put in place beyond the store's batch."""
-    right = generation_at(path, code, batch)
-    if right is not None and right != path:
-        right.replace(path)
-    elif right is None and path.exists():
-        path.unlink()  # written by a first import that never reached its store
-    drop_before(path)
+def mark_of(batch: int, link: Path, calendar: Path | None) -> bytes:
+    """Content of the mark: the batch under way and the hashes of its link file and calendar file."""
+    return " ".join([str(batch), sha256_of(link), sha256_of(calendar) if calendar else "-"]).encode()
+
+
+def _settle(places: Places, mark: list[str], batch: int) -> None:
+    """The store decides: if it is still the old one, its companions step back; then no earlier generation is needed.
+
+    A mark that is not complete was being written when the program died: nothing had been replaced yet.
+    """
+    interrupted = len(mark) == 3 and int(mark[0]) > batch
+    for path, new in zip((places.link, places.calendar), mark[1:] if interrupted else (), strict=False):
+        before = Path(str(path) + BEFORE)
+        if path.exists() and sha256_of(path) == new:
+            if before.exists():
+                before.replace(path)
+            else:
+                path.unlink()
+    for path in (places.link, places.calendar, places.store):
+        drop_before(path)
 
 
 def _require_companions(places: Places) -> None:
@@ -96,6 +110,8 @@ def _require_companions(places: Places) -> None:
             "the link file of this store is not there",
             todo="restore it; without it known people would get new surrogates, so nothing was imported",
         )
+    require_private(places.link, LINK)
     require_unchanged(places.link, LINK, row[0])
-    if row[1] and places.calendar.exists():
-        require_unchanged(places.calendar, CALENDAR, row[1])
+    if places.calendar.exists():
+        require_private(places.calendar, CALENDAR)
+        require_unchanged(places.calendar, CALENDAR, row[1] or "")

@@ -17,14 +17,18 @@ with known as (
   select run_key, person_key, start_utc from arrow_old
   where run_key not in (select run_key from arrow_new where run_key is not null)
     and person_key in (select person_key from arrow_new)
+), judged as (
+  select *, bool_or(start_utc is null) over (partition by person_key) as order_is_uncertain
+  from known where person_key is not null
 )
 select run_key, person_key,
-  case when start_utc is not null then
-    row_number() over (partition by person_key order by start_utc nulls last, run_key) end::integer as nth_run,
-  round((epoch_us(start_utc) - epoch_us(min(start_utc) over (partition by person_key))) / 60000000.0) / 60.0 as hours_from_first_run,
-  bool_or(start_utc is null) over (partition by person_key) as order_is_uncertain
-from known
-where person_key is not null
+  case when not order_is_uncertain
+    then row_number() over (partition by person_key order by start_utc, run_key) end::integer as nth_run,
+  case when not order_is_uncertain then
+    round((epoch_us(start_utc) - epoch_us(min(start_utc) over (partition by person_key))) / 60000000.0) / 60.0
+  end as hours_from_first_run,
+  order_is_uncertain
+from judged
 order by run_key
 """
 
@@ -36,7 +40,7 @@ def run_order(
 
     stored: run key -> person key of runs in the store (set-aside ones included); starts: run key -> start in UTC from the
     calendar file. con is the staging connection: starts never leave it. Where one run of a person has no start, the
-    order of all of them is uncertain and nth_run says nothing.
+    order of all of them is uncertain: nth_run and hours_from_first_run say nothing.
     """
     numbers = intake.numbers
     attempts = {

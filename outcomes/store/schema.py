@@ -88,6 +88,19 @@ def value_columns(table: str) -> list[str]:
     return [c for c, _ in record_columns()[table] if c not in without]
 
 
+@cache
+def one_row_tables() -> tuple[str, ...]:
+    """Record tables with one row a run: rows of several sheets that fill them become one."""
+    con = duckdb.connect(":memory:")
+    create_store(con)
+    rows = con.execute(
+        """select table_name from duckdb_constraints()
+        where schema_name = 'record' and constraint_type = 'PRIMARY KEY' and constraint_column_names = ['run_key'] order by 1"""
+    ).fetchall()
+    con.close()
+    return tuple(t for (t,) in rows if t != "set_aside_run")
+
+
 def tables_by_run() -> list[str]:
     """Record tables whose rows belong to a run, in name order."""
     return [t for t in record_columns() if t not in NOT_BY_RUN]

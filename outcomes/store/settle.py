@@ -9,6 +9,7 @@ import duckdb
 from outcomes.findings import Finding, in_order
 from outcomes.intake.rules import RULES, rule_text
 from outcomes.store.checks import refresh_set_aside
+from outcomes.store.schema import one_row_tables
 
 # Record tables whose rows are told apart by one word; a wrong cell takes the row away.
 _BY_WORD = {
@@ -75,13 +76,19 @@ def _key_findings(con: duckdb.DuckDBPyConnection) -> None:
 
 
 def _twins(con: duckdb.DuckDBPyConnection) -> None:
-    """Identical rows: the first is kept. Two rows of a run sheet that name one run and differ: both set aside."""
+    """Identical rows: the first is kept. Rows of one run that differ, or name two persons: all are set aside."""
+    con.execute(
+        """insert into work.finding
+        select 'KEY.PERSONS-DIFFER', 'run', r.sheet_no, r.line, r.run_key, '', '', '', ''
+        from work.row r join work.run_name n using (run_key) where n.is_disputed"""
+    )
     con.execute(
         """create or replace table work.twin as
         select sheet_no, line, run_key, signature, s.row_is,
           row_number() over (partition by sheet_no, run_key, signature order by line) as copy_no,
           count(distinct signature) over (partition by sheet_no, run_key) as n_versions
-        from work.row join work.sheet_info s using (sheet_no) where run_key is not null"""
+        from work.row join work.sheet_info s using (sheet_no)
+        where run_key in (select run_key from work.run_name where not is_disputed)"""
     )
     con.execute(
         """update work.row r set state = 'duplicate' from work.twin t
@@ -91,7 +98,9 @@ def _twins(con: duckdb.DuckDBPyConnection) -> None:
     con.execute(
         """insert into work.finding
         select 'ROW.TWINS-DIFFER', 'run', sheet_no, line, run_key, '', '', '', ''
-        from work.twin where row_is = 'run' and n_versions > 1"""
+        from work.twin where n_versions > 1
+          and (row_is = 'run' or sheet_no in (select sheet_no from work.piece_info where target_table in (select unnest(?))))""",
+        [list(one_row_tables())],
     )
 
 
@@ -129,10 +138,13 @@ def _take_away(con: duckdb.DuckDBPyConnection, field: str, table: str, column: s
         con.execute(f'update candidate.{table} set "{column}" = null where (run_key, sheet_no, line) in ({hit})', [field])
     con.execute(
         f"""insert into candidate.missing_value
-        select distinct h.run_key, case when p.target_table = 'measurement' then h.f || '.' || p.window_label else h.f end,
-          'set_aside', h.sheet_no, h.line
-        from (select *, ? as f from ({hit})) h join work.piece_info p on p.field = h.f and p.sheet_no = h.sheet_no""",
-        [field, field],
+        select h.run_key, h.f, 'set_aside', min(h.sheet_no), min(h.line) from (
+          select distinct h.run_key, h.sheet_no, h.line,
+            case when p.target_table = 'measurement' then ? || '.' || p.window_label else ? end as f
+          from ({hit}) h join work.piece_info p on p.field = ?
+        ) h where not exists (select 1 from candidate.missing_value c where c.run_key = h.run_key and c.field = h.f)
+        group by h.run_key, h.f""",
+        [field, field, field, field],
     )
 
 

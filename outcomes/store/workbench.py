@@ -8,7 +8,7 @@ import pyarrow as pa
 from outcomes.intake.stage import Staging
 from outcomes.intake.take_in import Intake
 from outcomes.intake.vocabulary import load_vocabulary
-from outcomes.store.schema import POSITION, record_columns
+from outcomes.store.schema import POSITION, one_row_tables, record_columns
 
 _TABLES = """
 create schema incoming; create schema candidate; create schema work; create schema sheet;
@@ -51,6 +51,7 @@ class Workbench:
             "run_no": pa.array(range(len(numbers.run_keys)), pa.int32()),
             "run_key": pa.array(numbers.run_keys, pa.string()),
             "person_key": pa.array(numbers.person_keys, pa.string()),
+            "is_disputed": pa.array([n in numbers.disputed for n in range(len(numbers.run_keys))], pa.bool_()),
         }))  # fmt: skip
         staging = intake.staging
         self._copy(staging, "sheet_info", "select * from staging.sheet order by sheet_no")
@@ -95,8 +96,17 @@ class Workbench:
         return f"o.run_key in (select run_key from candidate.{table})"
 
     def _candidate(self, table: str, source_key: str, plan_is_from_start: bool) -> str:
+        """Query for candidate.<table>. Rows of one run from several sheets become one where the table has one row a run."""
         if table == "person":
             return self._person()
+        rows = self._rows(table, source_key, plan_is_from_start)
+        if table not in one_row_tables():
+            return rows
+        place = "(sheet_no, line)"
+        merged = ", ".join(_MERGES.get(c, 'arg_min("{c}", {p})').format(c=c, p=place) + f' as "{c}"' for c, _ in record_columns()[table] if c != "run_key")
+        return f"select run_key, {merged}, min(sheet_no) as sheet_no, arg_min(line, {place}) as line from ({rows}) group by run_key"
+
+    def _rows(self, table: str, source_key: str, plan_is_from_start: bool) -> str:
         columns = record_columns()[table]
         if table not in self._made:
             body = ", ".join(f'null::{t} as "{c}"' for c, t in columns)
@@ -111,15 +121,18 @@ class Workbench:
         return f"select n.run_key, {picks}, i.sheet_no, i.line from incoming.{table} i join work.run_name n using (run_no) where {there}"
 
     def _person(self) -> str:
-        if "person" in self._made:
-            picks = 'any_value(i.sex_recorded) as sex_recorded, any_value(i.height_cm) as height_cm, min(i.sheet_no) as sheet_no, min(i.line) as line'
-            source = "incoming.person i join work.run_name n using (run_no)"
-        else:
-            picks = "null::varchar as sex_recorded, null::double as height_cm, null::integer as sheet_no, null::integer as line"
-            source = "work.run_name n"
-        return f"""select n.person_key, {picks},
-            coalesce(bool_or(o.order_is_uncertain), false) as order_is_uncertain
-          from {source} left join work.run_order o using (run_key)
+        """One row a person: what the earliest run of the batch says. decides: that run is the first of all."""
+        said = "incoming.person" if "person" in self._made else (
+            "(select null::integer as run_no, null::varchar as sex_recorded, null::double as height_cm, "
+            "null::integer as sheet_no, null::integer as line)"
+        )  # fmt: skip
+        order = "(coalesce(o.hours_from_first_run, 1e12), n.run_key)"
+        return f"""select n.person_key, arg_min(n.run_key, {order}) as run_key,
+            arg_min(i.sex_recorded, {order}) as sex_recorded, arg_min(i.height_cm, {order}) as height_cm,
+            min(i.sheet_no) as sheet_no, min(i.line) as line,
+            coalesce(bool_or(o.order_is_uncertain), false) as order_is_uncertain,
+            coalesce(min(o.hours_from_first_run), 1) = 0 as decides
+          from work.run_name n left join {said} i using (run_no) left join work.run_order o using (run_key)
           where n.person_key is not null group by n.person_key"""
 
     def _support_run(self, source_key: str, plan_is_from_start: bool) -> str:
@@ -143,6 +156,7 @@ _PICKS = {
     ("hospital_outcome", "discharge_to"): "nullif(i.discharge_to, 'still_inpatient')",
     ("hospital_outcome", "is_alive_at_discharge"): "coalesce(i.is_alive_at_discharge, i.discharge_to <> 'died' and i.discharge_to <> 'still_inpatient')",
 }
+_MERGES = {c: 'bool_or("{c}")' for c in ("is_still_inpatient", "age_is_uncertain", "age_topcoded", "plan_is_from_start")}
 _PERSONS = "(select person_key from work.run_name where person_key is not null)"
 _WANTED = {
     True: f"o.person_key in {_PERSONS}",
