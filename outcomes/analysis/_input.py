@@ -191,11 +191,22 @@ def in_order(found: set[str]) -> list[str]:
     )
 
 
-def groups(values: Any, n: int) -> Members:
+FUTURE = (
+    "the groups were known only after the clock had started, so their members had to live until then; "
+    "use the pathway intended at time zero, or a landmark, or an exposure that changes with time "
+    "(Mantel-Byar, Simon-Makuch, a time-dependent Cox model), or start the clock at the ending"
+)
+
+
+def groups(values: Any, n: int, known_at: Any = None) -> Members:
     """(label, members) of every group in order of label; one group '' if there is no grouping.
 
-    A pandas Categorical declares its levels and their order: a level without rows keeps its place.
+    A pandas Categorical declares its levels and their order: a level without rows keeps its place. known_at:
+    when the group was known (one number or one a row; missing means never). NotEstimable
+    grouping_from_the_future if any of them lies after time zero.
     """
+    if known_at is not None and not _known_at_start(known_at):
+        raise NotEstimable("grouping_from_the_future", FUTURE)
     if values is None:
         return [("", np.ones(n, dtype=bool))]
     words = labels(values, n)
@@ -205,6 +216,10 @@ def groups(values: Any, n: int) -> Members:
     else:
         order = in_order({str(v) for v in words})
     return [(g, np.asarray(words == g, dtype=bool)) for g in order]
+
+
+def _known_at_start(known_at: Any) -> bool:
+    return bool((_as_floats(np.atleast_1d(np.asarray(known_at, dtype=object)), "known_at") <= 0).all())
 
 
 def cluster_codes(values: Any, n: int) -> Codes | None:
@@ -224,3 +239,23 @@ def need_rows(n: float) -> None:
     """NotEstimable no_runs if nothing is left."""
     if n <= 0:
         raise NotEstimable("no_runs", "nothing is left to estimate from")
+
+
+def causes_of(values: Any, n: int, declared: Sequence[Any] | None) -> tuple[list[str], Codes]:
+    """Labels of the causes in their order and the code 0 (censored), 1 … k of every row.
+
+    Censored is 0 or an empty text. Without a declared order the causes that occur are sorted. A cause that
+    occurs and is not declared is refused: dropping it silently would break the sum.
+
+    >>> causes_of(["B", "", "A"], 3, None)
+    (['A', 'B'], array([2, 0, 1]))
+    """
+    words = ["" if v == "0" else v for v in labels(values, n, "cause")]
+    named = [word(v) for v in declared] if declared is not None else in_order(set(words) - {""})
+    if len(set(named)) != len(named) or {"", "0"} & set(named):
+        raise InputRefused("causes", "causes must be distinct and none of them may be the code of censoring")
+    place = {"": 0, **{c: i for i, c in enumerate(named, start=1)}}
+    unknown = set(words) - place.keys()
+    if unknown:
+        raise InputRefused("event_code", f"{len(unknown)} causes occur that are not declared")
+    return named, np.array([place[v] for v in words], dtype=np.int64)

@@ -57,15 +57,35 @@ class Result:
     notes: tuple[Caution, ...] = ()
 
 
-def tidy(rows: Sequence[Mapping[str, object]], columns: Sequence[str]) -> pd.DataFrame:
+TEXT = ("group", "cause", "state", "reason")
+
+
+def tidy(
+    rows: Sequence[Mapping[str, object]], columns: Sequence[str], words: Sequence[str] = ()
+) -> pd.DataFrame:
     """A frame with exactly these columns and nullable types, whether or not there are rows.
 
-    Floats become Float64, counts (at_risk, events, censored) Int64 or, if weighted, Float64, words string.
+    Text columns (group, cause, state, reason and those of `words`) become string, every other one Float64;
+    NaN becomes NA.
     """
     frame = pd.DataFrame.from_records(list(rows), columns=list(columns))
-    for name in columns:
-        if name in ("group", "cause", "state", "reason"):
-            frame[name] = frame[name].astype("string")
-        else:
-            frame[name] = frame[name].astype("Float64")
+    return _typed(frame, words)
+
+
+def tidy_columns(
+    values: Mapping[str, object], columns: Sequence[str], words: Sequence[str] = ()
+) -> pd.DataFrame:
+    """The same from whole columns; a column that is not given is missing throughout."""
+    return _typed(pd.DataFrame(dict(values)).reindex(columns=list(columns)), words)
+
+
+def joined(parts: Sequence[pd.DataFrame], columns: Sequence[str], words: Sequence[str] = ()) -> pd.DataFrame:
+    """Frames of one shape below each other; an empty frame of that shape if there are none."""
+    return pd.concat(parts, ignore_index=True) if parts else tidy([], columns, words)
+
+
+def _typed(frame: pd.DataFrame, words: Sequence[str]) -> pd.DataFrame:
+    for name in frame.columns:
+        is_text = name in TEXT or name in words
+        frame[name] = frame[name].astype("string" if is_text else "Float64")
     return frame
