@@ -75,3 +75,36 @@ def _rewrite(places: dict[str, int]) -> str:
     hour = at("H") if "H" in places else at("h")
     text = f"{at('Y')}-{at('M')}-{at('D')} {hour}:{at('m')}:{at('s')}"
     return text + (f" {at('A')}" if "A" in places else "")
+
+
+@dataclass(frozen=True)
+class MomentLayout:
+    """A pattern of fixed width, so that a whole column is read by place and not by a regular expression a cell.
+
+    shape: every digit 9, the half of the day A; starts: 1-based place of year, month, day, hour, minute, second and
+    half of the day, 0 for a part that the pattern lacks.
+    """
+
+    shape: str
+    starts: tuple[int, int, int, int, int, int, int]
+
+
+def moment_layout(pattern: str) -> MomentLayout | None:
+    """The layout of a pattern; None if a part has no fixed width or an offset stands in the cell.
+
+    >>> moment_layout("DD.MM.YYYY HH:mm")
+    MomentLayout(shape='99.99.9999 99:99', starts=(7, 4, 1, 12, 15, 0, 0))
+    """
+    moment_form(pattern)
+    shape = ""
+    starts: dict[str, int] = {}
+    for part in filter(None, _SPLIT.split(pattern)):
+        if part in ("M", "D", "H", "h", "Z"):
+            return None
+        if part in _TOKENS:
+            starts["H" if part == "hh" else _TOKENS[part][0]] = len(shape) + 1
+            shape += "AA" if part == "AM" else "9" * len(part)
+        else:
+            shape += part
+    year, month, day, hour, minute, second, half = (starts.get(name, 0) for name in "YMDHmsA")
+    return MomentLayout(shape, (year, month, day, hour, minute, second, half))

@@ -8,7 +8,7 @@ import duckdb
 import pyarrow as pa
 
 from outcomes.intake.mapping import Column, Mapping, Piece, Sheet
-from outcomes.intake.moment_pattern import moment_form
+from outcomes.intake.moment_pattern import moment_form, moment_layout
 
 _CODED = ("code", "boolean")
 _TIMED = ("moment", "moment_before", "birth_date", "year_of")
@@ -40,12 +40,14 @@ def load_pieces(con: duckdb.DuckDBPyConnection, mapping: Mapping, lists: dict[st
     codes: list[tuple[int, str, str]] = []
     tokens: list[tuple[int, str]] = []
     columns: dict[int, list[tuple[Column, list[int]]]] = {}
+    patterns: list[Column] = []
     for sheet_no, _, sheet in sheets_of(mapping):
         for column in sheet.columns:
             numbers = []
             for piece in column.pieces:
                 number = len(pieces)
                 numbers.append(number)
+                patterns.append(column)
                 pieces.append(_piece_row(number, sheet_no, column, piece, mapping.source.time_zone))
                 codes += [(number, text, value) for text, value in _codes(column, lists)]
                 tokens += [(number, token) for token in sorted(set(column.missing))]
@@ -55,10 +57,26 @@ def load_pieces(con: duckdb.DuckDBPyConnection, mapping: Mapping, lists: dict[st
     code_rows = [{"piece_no": n, "text": t, "value": v} for n, t, v in codes]
     _create(con, "code", pa.Table.from_pylist(code_rows, schema=pa.schema(
         [("piece_no", pa.int32()), ("text", pa.string()), ("value", pa.string())])))
+    _create(con, "moment_layout", layout_table([(i, p.pattern) for i, p in enumerate(patterns)]))
     token_rows = [{"piece_no": n, "token": t} for n, t in tokens]
     _create(con, "missing_token", pa.Table.from_pylist(token_rows, schema=pa.schema(
         [("piece_no", pa.int32()), ("token", pa.string())])))
     return columns
+
+
+LAYOUT_PARTS = ("year", "month", "day", "hour", "minute", "second", "half")
+
+
+def layout_table(patterns: list[tuple[int, str]]) -> pa.Table:
+    """Places of the parts for pieces whose pattern has a fixed width: piece_no, shape and one column a part."""
+    rows = []
+    for number, pattern in patterns:
+        layout = moment_layout(pattern) if pattern else None
+        if layout is not None:
+            places = {f"{part}_at": at for part, at in zip(LAYOUT_PARTS, layout.starts, strict=True)}
+            rows.append({"piece_no": number, "shape": layout.shape, **places})
+    kinds = [("piece_no", pa.int32()), ("shape", pa.string()), *((f"{part}_at", pa.int32()) for part in LAYOUT_PARTS)]
+    return pa.Table.from_pylist(rows, schema=pa.schema(kinds))
 
 
 def _create(con: duckdb.DuckDBPyConnection, name: str, table: pa.Table) -> None:

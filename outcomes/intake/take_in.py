@@ -32,6 +32,9 @@ class Intake:
         self.staging.con.close()
 
 
+# Small enough that a chunk of a wide sheet and its typed copies stay below a few hundred megabytes.
+CHUNK_ROWS = 4_000
+
 Opener = Callable[[], BinaryIO]
 
 
@@ -55,7 +58,7 @@ def take_in(
     given: set[int] = set()
     for file, sheet_no, sheet in _in_order(mapping):
         with openers[file.key]() as stream:
-            for grid in read(stream, _spec(file, [sheet])):
+            for grid in read(stream, _spec(file, [sheet]), chunk_rows=CHUNK_ROWS):
                 places = _places(grid, file, sheet)
                 run_no = run_numbers(grid, sheet, places, numbers)
                 cells = cell_table(grid, sheet_no, staging.columns[sheet_no], places, run_no)

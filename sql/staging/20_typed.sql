@@ -6,17 +6,39 @@ with known_code as (
       select 1 from vocabulary.field f join vocabulary.code_value v on v.list = f.list and v.value = c.value
       where f.field = p.field) as is_missing
   from staging.code c join staging.piece p using (piece_no)
-), rewritten as (
+), worded as (
   select
     t.*, p.* exclude (piece_no, sheet_no),
     t.missing_word is null and t.problem is null as is_there,
-    case when p.is_timed and p.moment_form <> '' and regexp_full_match(t.word, p.moment_form)
-      then regexp_replace(t.word, p.moment_form, p.moment_rewrite) end as fixed_text,
-    case when p.is_timed and p.moment_offset <> '' and regexp_full_match(t.word, p.moment_form)
-      then replace(regexp_replace(t.word, p.moment_form, p.moment_offset), ':', '') end as offset_text,
-    regexp_full_match(t.word, p.number_form) as is_number_text
+    y.* exclude (piece_no),
+    regexp_replace(regexp_replace(t.word, '[AaPp][Mm]', 'AA'), '[0-9]', '9', 'g') as seen_shape,
+    -- Marks become fixed signs, so that one constant form reads every declared way of writing numbers.
+    case when contains(t.word, '.') and p.decimal_mark <> '.' and p.thousands_mark <> '.' or contains(t.word, '~') then ''
+      else replace(case when p.thousands_mark = '_' then t.word else replace(t.word, p.thousands_mark, '~') end, p.decimal_mark, '.')
+    end as number_text
   from staging.text t
   join staging.piece p using (piece_no)
+  left join staging.moment_layout y using (piece_no)
+), rewritten as (
+  select
+    *,
+    -- A pattern of fixed width is read by place; only others pay for a regular expression a cell.
+    case
+      when not is_timed or not is_there then null
+      when shape is not null then
+        case when seen_shape = shape then
+          word[year_at:year_at + 3] || '-' || word[month_at:month_at + 1] || '-' || word[day_at:day_at + 1] || ' '
+          || case when hour_at > 0 then word[hour_at:hour_at + 1] else '00' end || ':'
+          || case when minute_at > 0 then word[minute_at:minute_at + 1] else '00' end || ':'
+          || case when second_at > 0 then word[second_at:second_at + 1] else '00' end
+          || case when half_at > 0 then ' ' || word[half_at:half_at + 1] else '' end
+        end
+      when moment_form <> '' and regexp_full_match(word, moment_form) then regexp_replace(word, moment_form, moment_rewrite)
+    end as fixed_text,
+    case when is_timed and is_there and moment_offset <> '' and regexp_full_match(word, moment_form)
+      then replace(regexp_replace(word, moment_form, moment_offset), ':', '') end as offset_text,
+    regexp_full_match(number_text, '-?(?:[0-9]{1,15}|[0-9]{1,3}(?:~[0-9]{3}){1,4})(?:\.[0-9]{1,15})?') as is_number_text
+  from worded
 ), parsed as (
   select
     r.*, k.value as code, coalesce(k.is_missing, false) as is_missing_code,
@@ -24,7 +46,7 @@ with known_code as (
     case
       when r.number is not null then r.number
       when k.value is not null then try_cast(k.value as double)
-      when r.is_number_text then try_cast(replace(replace(r.word, r.thousands_mark, ''), r.decimal_mark, '.') as double)
+      when r.is_number_text then try_cast(replace(r.number_text, '~', '') as double)
     end as read_number,
     case
       when r.offset_text is null then null

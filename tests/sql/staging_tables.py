@@ -6,7 +6,7 @@ import duckdb
 from text_table import fill, rows_of, staging_step, table_text
 
 from outcomes.intake.moment_pattern import moment_form
-from outcomes.intake.pieces import number_form
+from outcomes.intake.pieces import layout_table, number_form
 from outcomes.intake.stage import connect_in_memory
 from outcomes.intake.vocabulary import load_vocabulary, vocabulary
 
@@ -39,6 +39,9 @@ def staged(upto: str, *, pieces: str, cells: str, codes: str = "", tokens: str =
     con.execute(_TABLES)
     for row in rows_of(pieces):
         fill(con, "staging.piece", table_text([_piece(row)]))
+    layouts = layout_table([(int(str(r["piece_no"])), str(r.get("pattern") or "")) for r in rows_of(pieces)])
+    con.register("layouts", layouts)
+    con.execute("create table staging.moment_layout as select * from layouts")
     for number, row in enumerate(rows_of(cells), start=1):
         _put_cell(con, {"sheet_no": "0", "line": str(number), "run_no": "1", **row})
     for table, text in (("code", codes), ("missing_token", tokens), ("run_start", starts)):
