@@ -87,8 +87,8 @@ class _Stratum:
     """Score and covariance of one stratum, one pass over its event times.
 
     At each time, by group: r at risk, d1 events of interest, d2 others, s the Kaplan–Meier of all endings
-    just before, f the incidence just before; h = r/s; pooled incidence f0 grows by D1/Σh. Parts of the variance
-    that depend on the rest of the curve are kept in c, v2 and v3 and joined at the end.
+    just before, f the incidence just before; h = r/s; pooled incidence f0 grows by D1/Σh. Parts of the
+    variance that depend on the rest of the curve are kept in c, v2 and v3 and joined at the end.
     """
 
     def __init__(self, rows: Sample, kind: Codes, which: Codes, g: int, rho: float) -> None:
