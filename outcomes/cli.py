@@ -7,13 +7,12 @@ import ast
 import importlib
 import importlib.util
 import pkgutil
-import re
 import sys
 import traceback
 from collections.abc import Sequence
-from typing import NoReturn
 
 from outcomes import command
+from outcomes.command._parser import Parser
 from outcomes.errors import OutcomesError, UsageError
 
 INTERRUPTED = 130
@@ -50,7 +49,11 @@ def _report_bug(error: Exception, debug: bool) -> None:
 
 
 def _run(words: list[str]) -> int:
-    verbs = {m.name.replace("_", "-"): m.name for m in pkgutil.iter_modules(command.__path__) if not m.name.startswith("_")}
+    verbs = {
+        m.name.replace("_", "-"): m.name
+        for m in pkgutil.iter_modules(command.__path__)
+        if not m.name.startswith("_")
+    }
     verbs["import"] = verbs.pop("import-files")
     if not words or words[0] in ("-h", "--help", "help"):
         print(_overview(verbs))
@@ -75,21 +78,18 @@ def _overview(verbs: dict[str, str]) -> str:
     lines = ["usage: outcomes COMMAND …   (outcomes COMMAND --help says more)", ""]
     for verb, name in sorted(verbs.items()):
         spec = importlib.util.find_spec(f"outcomes.command.{name}")
-        source = spec.loader.get_source(spec.name) if spec and spec.loader and hasattr(spec.loader, "get_source") else ""
+        source = (
+            spec.loader.get_source(spec.name)
+            if spec and spec.loader and hasattr(spec.loader, "get_source")
+            else ""
+        )
         first = (ast.get_docstring(ast.parse(source or "")) or "").split("\n")[0]
         lines.append(f"  {verb:<12} {first}")
-    lines += ["", "It informs review and research, never a bedside decision. Add --debug to see where an internal error arose."]
+    lines += [
+        "",
+        "It informs review and research, never a bedside decision. Add --debug to see where an internal error arose.",
+    ]
     return "\n".join(lines)
-
-
-class Parser(argparse.ArgumentParser):
-    """Usage errors in our form; what was typed is not repeated, because a file name may hold an identifier."""
-
-    def error(self, message: str) -> NoReturn:
-        about = re.match(r"argument [^:]*", message)
-        needed = re.match(r"the following arguments are required: .*", message)
-        what = about.group(0) if about else needed.group(0) if needed else "the arguments are not understood"
-        raise UsageError("USAGE.ARGUMENTS", what, todo=f"{self.prog} --help")
 
 
 if __name__ == "__main__":

@@ -14,9 +14,9 @@ import random
 from collections.abc import Callable
 from pathlib import Path
 
-from outcomes.cli import Parser
 from outcomes.command import _shared as shared
 from outcomes.command import report
+from outcomes.command._parser import Parser
 from outcomes.command.import_files import show
 from outcomes.errors import DataRefused, UsageError
 from outcomes.findings import Finding
@@ -30,14 +30,20 @@ LISTED = 6
 
 
 def arguments(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("--out", default="demo-output", metavar="FOLDER", help="new or empty folder (default: demo-output)")
+    parser.add_argument(
+        "--out", default="demo-output", metavar="FOLDER", help="new or empty folder (default: demo-output)"
+    )
     parser.add_argument("--runs", type=int, default=160, help="invented runs a source (default 160)")
 
 
 def run(args: argparse.Namespace) -> int:
     folder = Path(args.out)
     if folder.exists() and (not folder.is_dir() or any(folder.iterdir())):
-        raise UsageError("USAGE.FOLDER", "the folder of the demo exists and is not empty", todo="name another one: outcomes demo --out FOLDER")
+        raise UsageError(
+            "USAGE.FOLDER",
+            "the folder of the demo exists and is not empty",
+            todo="name another one: outcomes demo --out FOLDER",
+        )
     if not 10 <= args.runs <= 5000:
         raise UsageError("USAGE.ARGUMENTS", "10 to 5000 runs")
     folder.mkdir(parents=True, exist_ok=True, mode=0o700)
@@ -72,7 +78,9 @@ def _import(style: str, mapping_path: Path, files: list[Path], store: Path, keys
     print("The defective rows are set aside, the good ones go in:")
     done = run_import(Request(Places.beside(store), mapping, paths, set_aside=True, new_key=keys))
     c = done.counts
-    print(f"  rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} + duplicates {c.rows_duplicate}; batch {done.batch}")
+    print(
+        f"  rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} + duplicates {c.rows_duplicate}; batch {done.batch}"
+    )
 
 
 def _some(findings: tuple[Finding, ...]) -> list[Finding]:
@@ -83,4 +91,6 @@ def _report(folder: Path, store: Path) -> None:
     parser = Parser(prog="outcomes report")
     report.arguments(parser)
     print("\nThe annual audit, internal profile:")
-    report.run(parser.parse_args(["audit", "--store", str(store), "--profile", "internal", "--out", str(folder)]))
+    report.run(
+        parser.parse_args(["audit", "--store", str(store), "--profile", "internal", "--out", str(folder)])
+    )

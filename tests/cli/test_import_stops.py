@@ -99,7 +99,8 @@ def test_a_header_that_the_mapping_does_not_list_is_named_by_place_and_shape_onl
 
 def test_a_header_that_the_mapping_lists_is_named(desk: Desk) -> None:
     mapped = Mapped()
-    body = "\n".join([mapped.header().replace(",Weight", ""), *ROWS, ""])
+    rows = [",".join(row.split(",")[:4] + row.split(",")[5:]) for row in ROWS]
+    body = "\n".join([mapped.header().replace(",Weight", ""), *rows, ""])
     assert "Weight" in stopped(desk, 3, "HEADER.MISMATCH", mapped, body)
 
 
