@@ -10,10 +10,36 @@ import pandas as pd
 from outcomes.errors import OutcomesError
 
 # Kind of each column by the end of its name or by its name; anything else is text.
-_NUMBER_ENDS = ("_h", "_m2", "_kg", "_cm", "_mmhg", "_mmol_l", "_umol_l", "_u_l", "_10_9_l", "_percent", "_kg_min", "_min", "_cmh2o", "_hours", "_ml_day")
+_NUMBER_ENDS = (
+    "_h",
+    "_m2",
+    "_kg",
+    "_cm",
+    "_mmhg",
+    "_mmol_l",
+    "_umol_l",
+    "_u_l",
+    "_10_9_l",
+    "_percent",
+    "_kg_min",
+    "_min",
+    "_cmh2o",
+    "_hours",
+    "_ml_day",
+)
 _WHOLE = ("nth_run", "run_year", "age_years", "age_low_years", "cause", "cpc", "open_days", "n", "stage_no", "episode_no",
           "n_records", "n_events", "n_before", "n_after_end", "n_too_early", "timi_flow_after_pci", "gcs_total")  # fmt: skip
-_NUMBERS = ("lactate_mmol_l_admission", "lactate_mmol_l_pre_last", "creatinine_umol_l_admission", "ph", "fio2", "hours_at_risk", "hours_to_first", "value", "egfr_ml_min_1_73m2")
+_NUMBERS = (
+    "lactate_mmol_l_admission",
+    "lactate_mmol_l_pre_last",
+    "creatinine_umol_l_admission",
+    "ph",
+    "fio2",
+    "hours_at_risk",
+    "hours_to_first",
+    "value",
+    "egfr_ml_min_1_73m2",
+)
 _FLAGS = ("died", "had_arrest", "was_ventilated", "transferred_in", "leg_cannula", "right_sided_monitoring", "prior_stroke",
           "prior_cardiac_surgery", "prior_mi_or_cabg", "aortic_arch_surgery", "preoperative_stroke_or_unconscious", "rhythm_shockable_at_arrival", "plan_is_from_start", "age_topcoded")  # fmt: skip
 

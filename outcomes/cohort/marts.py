@@ -47,7 +47,8 @@ def _views(con: duckdb.DuckDBPyConnection) -> None:
     for schema in ("record", "vocabulary", "ledger"):
         con.execute(f"create schema {schema}")
         names = con.execute(
-            "select table_name from duckdb_tables() where database_name = 'store' and schema_name = ? order by table_name", [schema]
+            "select table_name from duckdb_tables() where database_name = 'store' and schema_name = ? order by table_name",
+            [schema],
         ).fetchall()
         for (name,) in names:
             con.execute(f'create view {schema}."{name}" as select * from store.{schema}."{name}"')

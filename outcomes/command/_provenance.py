@@ -12,16 +12,32 @@ import outcomes
 from outcomes import resources
 from outcomes.cohort.frames import Cohort
 
-_LIBRARIES = ("duckdb", "numpy", "pandas", "scipy", "lifelines", "scikit-learn", "matplotlib", "seaborn", "Jinja2")
+_LIBRARIES = (
+    "duckdb",
+    "numpy",
+    "pandas",
+    "scipy",
+    "lifelines",
+    "scikit-learn",
+    "matplotlib",
+    "seaborn",
+    "Jinja2",
+)
 
 
 def code_digest() -> str:
     """SHA-256 over the shipped code, SQL and section files, by relative name."""
     package = Path(outcomes.__file__).resolve().parent
     digest = hashlib.sha256()
-    roots = [("outcomes", package), ("sql", resources.shipped("sql")), ("reports", resources.shipped("reports"))]
+    roots = [
+        ("outcomes", package),
+        ("sql", resources.shipped("sql")),
+        ("reports", resources.shipped("reports")),
+    ]
     for name, root in roots:
-        for path in sorted(p for p in root.rglob("*") if p.suffix in (".py", ".sql", ".toml", ".md", ".j2", ".css")):
+        for path in sorted(
+            p for p in root.rglob("*") if p.suffix in (".py", ".sql", ".toml", ".md", ".j2", ".css")
+        ):
             relative = path.relative_to(root).as_posix()
             if not relative.startswith("_shipped/"):
                 digest.update(f"{name}/{relative}\n".encode())
@@ -29,7 +45,9 @@ def code_digest() -> str:
     return digest.hexdigest()
 
 
-def provenance(cohort: Cohort, *, kind: str, options: Sequence[str], made_on: str = "") -> dict[str, str | list[str]]:
+def provenance(
+    cohort: Cohort, *, kind: str, options: Sequence[str], made_on: str = ""
+) -> dict[str, str | list[str]]:
     """Label -> lines, in the order of print."""
     batches = [
         f"batch {row.batch_no}, source {row.source_key}: rows read {row.rows_read}, accepted {row.rows_accepted}, "

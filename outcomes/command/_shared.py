@@ -10,7 +10,8 @@ import os
 import re
 import sys
 import tempfile
-from collections.abc import Iterable, Mapping as Lookup
+from collections.abc import Iterable
+from collections.abc import Mapping as Lookup
 from pathlib import Path
 
 from outcomes.errors import UsageError
@@ -24,16 +25,24 @@ SAFE_NAME = re.compile(r"[A-Za-z0-9][A-Za-z0-9._-]{0,63}")
 
 
 def store_arguments(parser: argparse.ArgumentParser) -> None:
-    parser.add_argument("--store", default="outcomes.duckdb", metavar="FILE", help="the store (default: outcomes.duckdb)")
-    parser.add_argument("--link", metavar="FILE", help="link file, identifiers and surrogates (default: beside the store)")
-    parser.add_argument("--calendar", metavar="FILE", help="calendar file, when each run began (default: beside the store)")
+    parser.add_argument(
+        "--store", default="outcomes.duckdb", metavar="FILE", help="the store (default: outcomes.duckdb)"
+    )
+    parser.add_argument(
+        "--link", metavar="FILE", help="link file, identifiers and surrogates (default: beside the store)"
+    )
+    parser.add_argument(
+        "--calendar", metavar="FILE", help="calendar file, when each run began (default: beside the store)"
+    )
 
 
 def places_of(args: argparse.Namespace) -> Places:
     store = Path(args.store)
     if not store.parent.is_dir():
         raise UsageError("USAGE.FOLDER", "the folder of the store does not exist", todo="make it first")
-    return Places.beside(store, Path(args.link) if args.link else None, Path(args.calendar) if args.calendar else None)
+    return Places.beside(
+        store, Path(args.link) if args.link else None, Path(args.calendar) if args.calendar else None
+    )
 
 
 def load_mapping(name: str) -> Mapping:
@@ -53,7 +62,11 @@ def paths_of(mapping: Mapping, names: list[str]) -> dict[str, Path]:
     """Files by the keys of the mapping, in its order. Messages name the position, never the file."""
     if len(names) != len(mapping.files):
         keys = ", ".join(f.key for f in mapping.files)
-        raise UsageError("USAGE.FILES", f"the mapping has {len(mapping.files)} files, {len(names)} were given", todo=f"give them in this order: {keys}")
+        raise UsageError(
+            "USAGE.FILES",
+            f"the mapping has {len(mapping.files)} files, {len(names)} were given",
+            todo=f"give them in this order: {keys}",
+        )
     paths = {}
     for number, (file, name) in enumerate(zip(mapping.files, names, strict=True), start=1):
         path = Path(name)
@@ -77,7 +90,9 @@ def print_findings(findings: Iterable[Finding], stream: io.TextIOBase | None = N
             key = (f.code, f.source, f.sheet, f.column, f.rule)
             notes[key] = notes.get(key, 0) + 1
     for (code, source, sheet, column, rule), n in sorted(notes.items()):
-        print(f"  {code} (note) {source}/{sheet}{', ' + column if column else ''}: {rule} ({n} rows)", file=out)
+        print(
+            f"  {code} (note) {source}/{sheet}{', ' + column if column else ''}: {rule} ({n} rows)", file=out
+        )
 
 
 def findings_csv(findings: Iterable[Finding]) -> str:

@@ -19,7 +19,9 @@ from outcomes.store.importing import Request, run_import
 
 def arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("mapping", help="mapping file (TOML) of the source")
-    parser.add_argument("files", nargs="+", metavar="FILE", help="the source's files, in the order of the mapping")
+    parser.add_argument(
+        "files", nargs="+", metavar="FILE", help="the source's files, in the order of the mapping"
+    )
     shared.store_arguments(parser)
     parser.add_argument("--findings", metavar="FILE", help="write all findings as .csv or .json")
     parser.add_argument("--rules", action="store_true", help="also list every rule with its denominator")
@@ -53,8 +55,14 @@ def run(args: argparse.Namespace) -> int:
         shared.print_findings(done.findings)
         if args.rules:
             for check in done.checks:
-                said = f"{check['n_violating']} of {check['n_checked']}" if check["applicable"] else "not applicable to this source"
+                said = (
+                    f"{check['n_violating']} of {check['n_checked']}"
+                    if check["applicable"]
+                    else "not applicable to this source"
+                )
                 print(f"  {check['code']}: {said} ({check['of']})")
         c = done.counts
-        print(f"Rows read {c.rows_read}: {c.rows_accepted} good, {c.rows_set_aside} would be set aside, {c.rows_duplicate} duplicates")
+        print(
+            f"Rows read {c.rows_read}: {c.rows_accepted} good, {c.rows_set_aside} would be set aside, {c.rows_duplicate} duplicates"
+        )
     return 3 if done.refusals else 0

@@ -35,7 +35,11 @@ def run(args: argparse.Namespace) -> int:
     con.close()
     if not lines:
         near = difflib.get_close_matches(args.word, _words(), n=3)
-        raise UsageError("DESCRIBE.UNKNOWN", "nothing here has that name", todo="the nearest: " + ", ".join(near) if near else "outcomes describe")
+        raise UsageError(
+            "DESCRIBE.UNKNOWN",
+            "nothing here has that name",
+            todo="the nearest: " + ", ".join(near) if near else "outcomes describe",
+        )
     if args.json:
         shared.print_json({"lines": lines})
     else:
@@ -50,7 +54,9 @@ def _words() -> list[str]:
 
 
 def _overview(con: duckdb.DuckDBPyConnection) -> list[str]:
-    rows = con.execute("select table_name, comment from duckdb_tables() where schema_name = 'record' order by table_name").fetchall()
+    rows = con.execute(
+        "select table_name, comment from duckdb_tables() where schema_name = 'record' order by table_name"
+    ).fetchall()
     lists = ", ".join(sorted(vocabulary().lists))
     return [*(f"{name}: {comment}" for name, comment in rows), "", f"lists of codes: {lists}"]
 
@@ -66,7 +72,9 @@ def _table(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
     ).fetchall()
     if not rows:
         return []
-    about = con.execute("select comment from duckdb_tables() where schema_name = 'record' and table_name = ?", [word]).fetchone()
+    about = con.execute(
+        "select comment from duckdb_tables() where schema_name = 'record' and table_name = ?", [word]
+    ).fetchone()
     fields = sorted(f.name for f in vocabulary().fields.values() if f.table == word)
     return [
         f"table {word}: {about[0] if about else ''}",
@@ -83,10 +91,15 @@ def _field(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
         "select comment from duckdb_columns() where schema_name = 'record' and table_name = ? and column_name = ?",
         [field.table, field.column],
     ).fetchone()
-    lines = [f"field {word}: {comment[0] if comment else _label(con, field.column)}", f"  kind: {field.kind}; a wrong cell sets aside the {field.effect}"]
+    lines = [
+        f"field {word}: {comment[0] if comment else _label(con, field.column)}",
+        f"  kind: {field.kind}; a wrong cell sets aside the {field.effect}",
+    ]
     if field.hard_low is not None or field.hard_high is not None:
         lines.append(f"  possible: {_number(field.hard_low)} to {_number(field.hard_high)} (canonical unit)")
-    units = sorted((r, c) for (q, r), c in vocabulary().conversions.items() if q == field.quantity and field.quantity)
+    units = sorted(
+        (r, c) for (q, r), c in vocabulary().conversions.items() if q == field.quantity and field.quantity
+    )
     for received, c in units:
         shift = f" + {c.shift:.10g}" if c.shift else ""
         lines.append(f"  unit {received}: times {c.factor:.10g}{shift} gives {c.unit}")
@@ -117,24 +130,35 @@ def _list(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
 def _code(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
     lines = [
         f"code {word} of the list {name}: {label}"
-        for name, label in con.execute("select list, label from vocabulary.code_value where value = ? order by list", [word]).fetchall()
+        for name, label in con.execute(
+            "select list, label from vocabulary.code_value where value = ? order by list", [word]
+        ).fetchall()
     ]
     for label, gap, window, start, at_risk, source in con.execute(
-        "select label, gap_h, window_h, from_h, at_risk, source from vocabulary.complication_kind where kind = ?", [word]
+        "select label, gap_h, window_h, from_h, at_risk, source from vocabulary.complication_kind where kind = ?",
+        [word],
     ).fetchall():
         lines.append(
             f"complication {word}: {label}. A new record within {gap:g} h is the same episode; counted up to {window:g} h after the end; "
             f"at risk from {start:g} h, {at_risk}. Definition: {source}"
         )
-    for table, column in (("end_kind", "end_kind"), ("indication_group", "indication_group"), ("intended_pathway", "intended_pathway"), ("window_label", "window_label")):
+    for table, column in (
+        ("end_kind", "end_kind"),
+        ("indication_group", "indication_group"),
+        ("intended_pathway", "intended_pathway"),
+        ("window_label", "window_label"),
+    ):
         meaning = "label" if table == "indication_group" else "meaning"
         row = con.execute(f"select {meaning} from vocabulary.{table} where {column} = ?", [word]).fetchone()
         if row:
             lines.append(f"code {word} of the list {table}: {row[0]}")
     for label, unit, low, high, hard_low, hard_high in con.execute(
-        "select label, unit, plausible_low, plausible_high, hard_low, hard_high from vocabulary.analyte where analyte = ?", [word]
+        "select label, unit, plausible_low, plausible_high, hard_low, hard_high from vocabulary.analyte where analyte = ?",
+        [word],
     ).fetchall():
-        lines.append(f"analyte {word}: {label}, {unit}; usual {low:g} to {high:g}, possible {hard_low:g} to {hard_high:g}")
+        lines.append(
+            f"analyte {word}: {label}, {unit}; usual {low:g} to {high:g}, possible {hard_low:g} to {hard_high:g}"
+        )
     return lines
 
 
@@ -142,5 +166,7 @@ def _finding(word: str) -> list[str]:
     lines = [f"finding {word}: {RULES[word]}"] if word in RULES else []
     for check in all_checks():
         if check.code == word:
-            lines.append(f"check {word} ({check.topic}): {check.rule}; sets aside: {check.effect}; denominator: rows of {check.of}")
+            lines.append(
+                f"check {word} ({check.topic}): {check.rule}; sets aside: {check.effect}; denominator: rows of {check.of}"
+            )
     return lines

@@ -20,7 +20,9 @@ from outcomes.store.importing import Imported, Request, run_import
 
 def arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("mapping", help="mapping file (TOML) of the source")
-    parser.add_argument("files", nargs="+", metavar="FILE", help="the source's files, in the order of the mapping")
+    parser.add_argument(
+        "files", nargs="+", metavar="FILE", help="the source's files, in the order of the mapping"
+    )
     shared.store_arguments(parser)
     parser.add_argument("--set-aside", action="store_true", help="store the good rows, list the others")
     parser.add_argument("--replace", action="store_true", help="runs stored already get the new values")
@@ -44,7 +46,9 @@ def run(args: argparse.Namespace) -> int:
     except DataRefused as refused:
         shared.write_findings(args.findings, refused.findings)
         if args.json:
-            shared.print_json({"stored": False, "code": refused.code, "findings": [f.as_row() for f in refused.findings]})
+            shared.print_json(
+                {"stored": False, "code": refused.code, "findings": [f.as_row() for f in refused.findings]}
+            )
         else:
             shared.print_findings(refused.findings)
         raise
@@ -76,6 +80,11 @@ def show(done: Imported) -> None:
         return
     shared.print_findings(done.findings)
     c = done.counts
-    print(f"Rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} + duplicates {c.rows_duplicate}")
+    print(
+        f"Rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} + duplicates {c.rows_duplicate}"
+    )
     print(f"Runs: {done.merge.new} new, {done.merge.unchanged} unchanged, {done.merge.changed} replaced")
-    print(f"Stored as batch {done.batch}." if done.stored else "Nothing new; the store was not changed.", file=sys.stdout)
+    print(
+        f"Stored as batch {done.batch}." if done.stored else "Nothing new; the store was not changed.",
+        file=sys.stdout,
+    )

@@ -26,7 +26,9 @@ def arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--seed", type=int, default=1, help="the same seed gives the same files")
     parser.add_argument("--start-year", type=int, default=2021, help="first year (default 2021)")
     parser.add_argument("--years", type=int, default=3, help="number of years (default 3)")
-    parser.add_argument("--defects", action="store_true", help="plant one fault of every kind that the style can carry")
+    parser.add_argument(
+        "--defects", action="store_true", help="plant one fault of every kind that the style can carry"
+    )
     parser.add_argument("--out", default=".", metavar="FOLDER", help="folder for the files (default: here)")
 
 
@@ -40,7 +42,10 @@ def run(args: argparse.Namespace) -> int:
     export = write_export(cohort, args.style, folder, args.seed, DEFECT_KINDS if args.defects else ())
     if args.defects:
         truth = [asdict(d) for d in export.defects]
-        shared.write_output(folder / f"{args.style}-planted.json", (json.dumps(truth, indent=1, sort_keys=True, default=str) + "\n").encode())
+        shared.write_output(
+            folder / f"{args.style}-planted.json",
+            (json.dumps(truth, indent=1, sort_keys=True, default=str) + "\n").encode(),
+        )
     print(f"{args.runs} invented runs, style {args.style}, {len(export.defects)} planted faults")
     for path in (*export.paths, export.mapping):
         print(path)

@@ -49,13 +49,21 @@ def run(args: argparse.Namespace) -> int:
 
 def _find(con: duckdb.DuckDBPyConnection, given: str) -> str:
     if not re.fullmatch(r"[0-9a-f]{8,32}", given):
-        raise UsageError("TRACE.KEY", "a key has 8 to 32 of the characters 0-9 and a-f", todo="the internal report lists the keys")
+        raise UsageError(
+            "TRACE.KEY",
+            "a key has 8 to 32 of the characters 0-9 and a-f",
+            todo="the internal report lists the keys",
+        )
     rows = con.execute(
         "select run_key from record.support_run where starts_with(run_key, ?) union select run_key from record.set_aside_run where starts_with(run_key, ?)",
         [given, given],
     ).fetchall()
     if len(rows) != 1:
-        raise UsageError("TRACE.KEY", f"{len(rows)} runs have this key", todo="give more characters" if rows else "the internal report lists the keys")
+        raise UsageError(
+            "TRACE.KEY",
+            f"{len(rows)} runs have this key",
+            todo="give more characters" if rows else "the internal report lists the keys",
+        )
     return str(rows[0][0])
 
 
@@ -100,7 +108,10 @@ def _calendar_entry(con: duckdb.DuckDBPyConnection, places: Places, key: str) ->
 def _records(con: duckdb.DuckDBPyConnection, key: str) -> Iterator[str]:
     for table in sorted(tables_by_run()):
         names = [c for c, _ in record_columns()[table] if c not in ("run_key", "person_key")]
-        rows = con.execute(f"select {', '.join(chr(34) + n + chr(34) for n in names)} from record.{table} where run_key = ? order by all", [key]).fetchall()
+        rows = con.execute(
+            f"select {', '.join(chr(34) + n + chr(34) for n in names)} from record.{table} where run_key = ? order by all",
+            [key],
+        ).fetchall()
         for row in rows:
             yield f"hop 3  record.{table}: " + _pairs(names, row)
 
@@ -115,7 +126,11 @@ def _marts(con: duckdb.DuckDBPyConnection, key: str) -> Iterator[str]:
 
 
 def _pairs(names: list[str], row: tuple[object, ...]) -> str:
-    return ", ".join(f"{n} {v:.10g}" if isinstance(v, float) else f"{n} {v}" for n, v in zip(names, row, strict=True) if v is not None)
+    return ", ".join(
+        f"{n} {v:.10g}" if isinstance(v, float) else f"{n} {v}"
+        for n, v in zip(names, row, strict=True)
+        if v is not None
+    )
 
 
 def _report_lines(cohort: Cohort, key: str) -> Iterator[str]:

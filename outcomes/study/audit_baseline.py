@@ -36,7 +36,9 @@ def baseline(audit: Audit) -> Answer:
     shares, labels = _shares(frame, groups)
     n_of = {g: len(frame) if g == "all" else int((frame["pathway"] == g).sum()) for g in groups}
     small = [g for g in groups if n_of[g] < 20]
-    notes = (Caution("N-LOW", "Groups with fewer than twenty runs: " + ", ".join(small) + "."),) if small else ()
+    notes = (
+        (Caution("N-LOW", "Groups with fewer than twenty runs: " + ", ".join(small) + "."),) if small else ()
+    )
     return Answer(
         {"measures": Result(measures, DESCRIBED, n_of, notes), "shares": Result(shares, DESCRIBED, n_of)},
         {
@@ -52,7 +54,9 @@ def _frame(audit: Audit) -> pd.DataFrame:
     run, inputs = audit.current.run, audit.current.score_input
     wanted = [c for c in (*MEASURES, *FLAGS) if c in inputs.columns and c not in run.columns]
     frame = run.merge(inputs[["run_key", *wanted]], on="run_key", validate="one_to_one")
-    frame["is_female"] = (frame["sex_recorded"] == "female").where(frame["sex_recorded"].notna()).astype("boolean")
+    frame["is_female"] = (
+        (frame["sex_recorded"] == "female").where(frame["sex_recorded"].notna()).astype("boolean")
+    )
     return frame
 
 
@@ -67,7 +71,12 @@ def _measures(frame: pd.DataFrame, groups: list[str]) -> pd.DataFrame:
             continue
         for group in groups:
             values = _part(frame, group)[name].dropna().to_numpy(dtype=float)
-            row: dict[str, object] = {"cause": name, "group": group, "events": len(values), "at_risk": len(_part(frame, group))}
+            row: dict[str, object] = {
+                "cause": name,
+                "group": group,
+                "events": len(values),
+                "at_risk": len(_part(frame, group)),
+            }
             if len(values):
                 low, middle, high = np.quantile(values, [0.25, 0.5, 0.75])
                 row |= {"estimate": float(middle), "lower": float(low), "upper": float(high)}
@@ -80,7 +89,10 @@ def _measures(frame: pd.DataFrame, groups: list[str]) -> pd.DataFrame:
 def _shares(frame: pd.DataFrame, groups: list[str]) -> tuple[pd.DataFrame, dict[str, str]]:
     rows: list[dict[str, object]] = []
     labels: dict[str, str] = {}
-    kinds = sorted(frame["indication_group"].dropna().unique(), key=lambda k: (-int((frame["indication_group"] == k).sum()), k))
+    kinds = sorted(
+        frame["indication_group"].dropna().unique(),
+        key=lambda k: (-int((frame["indication_group"] == k).sum()), k),
+    )
     for name, label in FLAGS.items():
         if frame[name].notna().any():
             labels[name] = label
@@ -95,7 +107,12 @@ def _shares(frame: pd.DataFrame, groups: list[str]) -> tuple[pd.DataFrame, dict[
 
 def _share(name: str, group: str, values: pd.Series) -> dict[str, object]:
     known = int(values.notna().sum())
-    row: dict[str, object] = {"cause": name, "group": group, "events": int(values.fillna(False).sum()), "at_risk": known}
+    row: dict[str, object] = {
+        "cause": name,
+        "group": group,
+        "events": int(values.fillna(False).sum()),
+        "at_risk": known,
+    }
     return row if known else {"cause": name, "group": group, "reason": "not_recorded"}
 
 
@@ -108,8 +125,19 @@ def _columns(groups: list[str], n_of: dict[str, int], *, measured: bool) -> tupl
     columns = []
     for group in groups:
         heading = f"{'all' if group == 'all' else ENDINGS[group]} (N = {n_of[group]})"
-        kind, fields = ("quartiles_1", ("estimate", "lower", "upper")) if measured else ("x_of_n", ("events", "at_risk"))
-        columns.append(ColumnOf(slug(group), heading, kind, fields, {"group": group}, over="" if group == "all" else "by ending, known only afterwards"))
+        kind, fields = (
+            ("quartiles_1", ("estimate", "lower", "upper")) if measured else ("x_of_n", ("events", "at_risk"))
+        )
+        columns.append(
+            ColumnOf(
+                slug(group),
+                heading,
+                kind,
+                fields,
+                {"group": group},
+                over="" if group == "all" else "by ending, known only afterwards",
+            )
+        )
     return tuple(columns)
 
 

@@ -24,15 +24,31 @@ def complications(audit: Audit) -> Answer:
     if counts.empty:
         raise NotEstimable("no_runs", "No source of this period carries complications.")
     now = rate_table(counts)
-    order = now.table.sort_values(["estimate", "group"], ascending=[False, True], na_position="last")["group"].tolist()
+    order = now.table.sort_values(["estimate", "group"], ascending=[False, True], na_position="last")[
+        "group"
+    ].tolist()
     labels = _labels(audit.current, order)
-    before = rate_table(audit.before.complication) if audit.before is not None and not audit.before.complication.empty else None
+    before = (
+        rate_table(audit.before.complication)
+        if audit.before is not None and not audit.before.complication.empty
+        else None
+    )
     results = {"now": now} | ({"before": before} if before is not None else {})
     rows = tuple(RowOf(k, labels[k], {"group": k}) for k in order)
-    lists = {f"had_{k}": run_list(labels[k], _affected(counts, k)) for k in order if len(_affected(counts, k))}
+    lists = {
+        f"had_{k}": run_list(labels[k], _affected(counts, k)) for k in order if len(_affected(counts, k))
+    }
     words = {"value": "Events per 1,000 support-days", "now": audit.label, "before": audit.label_before}
     tables = {
-        "harm": TableOf("Complications on support", "Kind", "now", rows, _columns(), _notes(counts), {(k.removeprefix("had_"), "affected"): k for k in lists}),
+        "harm": TableOf(
+            "Complications on support",
+            "Kind",
+            "now",
+            rows,
+            _columns(),
+            _notes(counts),
+            {(k.removeprefix("had_"), "affected"): k for k in lists},
+        ),
         "harm_counted": TableOf("What is counted beside the rates", "Kind", "now", rows, _beside()),
     }
     by_ending = ending_table(audit.current)
@@ -107,7 +123,13 @@ def _looked(mine: pd.DataFrame) -> str:
     looked, window = float(mine["looked_until_h"].min()), float(mine["window_h"].max())
     if window <= 0:
         return "until the end of support"
-    return "after the end as well" if looked >= window else "not looked for after the end" if looked <= 0 else "for part of the window after the end"
+    return (
+        "after the end as well"
+        if looked >= window
+        else "not looked for after the end"
+        if looked <= 0
+        else "for part of the window after the end"
+    )
 
 
 def _columns() -> tuple[ColumnOf, ...]:
@@ -133,7 +155,9 @@ def _beside() -> tuple[ColumnOf, ...]:
 
 
 def _notes(counts: pd.DataFrame) -> tuple[str, ...]:
-    return ("A run is affected if it had an event on support or within the kind's window after it; rates count events on support only.",)
+    return (
+        "A run is affected if it had an event on support or within the kind's window after it; rates count events on support only.",
+    )
 
 
 def ending_table(cohort: Cohort) -> Result:
@@ -152,18 +176,35 @@ def ending_table(cohort: Cohort) -> Result:
             except NotEstimable as reason:
                 row["reason"] = reason.reason_code
             rows.append(row)
-    table = tidy(rows, ["cause", "group", "estimate", "lower", "upper", "events", "exposure", "at_risk", "reason"])
+    table = tidy(
+        rows, ["cause", "group", "estimate", "lower", "upper", "events", "exposure", "at_risk", "reason"]
+    )
     return Result(table, methods[0] if methods else Method("events / time at risk"))
 
 
 def _by_ending_layout(rows: tuple[RowOf, ...], result: Result) -> TableOf:
     columns = []
     for ending, label in ENDINGS.items():
-        columns.append(ColumnOf(f"{slug(ending)}_events", "Events", "count", ("events",), {"group": ending}, over=label))
-        columns.append(ColumnOf(f"{slug(ending)}_rate", "Rate", "number_1", ("estimate",), {"group": ending}, over=label))
-        columns.append(ColumnOf(f"{slug(ending)}_ci", "", "number_interval_1", ("lower", "upper"), {"group": ending}, over=label))
+        columns.append(
+            ColumnOf(f"{slug(ending)}_events", "Events", "count", ("events",), {"group": ending}, over=label)
+        )
+        columns.append(
+            ColumnOf(f"{slug(ending)}_rate", "Rate", "number_1", ("estimate",), {"group": ending}, over=label)
+        )
+        columns.append(
+            ColumnOf(
+                f"{slug(ending)}_ci",
+                "",
+                "number_interval_1",
+                ("lower", "upper"),
+                {"group": ending},
+                over=label,
+            )
+        )
     by_kind = tuple(RowOf(r.key, r.label, {"cause": str(r.where["group"])}) for r in rows)
-    return TableOf("Events per 1,000 support-days by way support ended", "Kind", "by_ending", by_kind, tuple(columns))
+    return TableOf(
+        "Events per 1,000 support-days by way support ended", "Kind", "by_ending", by_kind, tuple(columns)
+    )
 
 
 def _cautions(audit: Audit, kinds: int) -> tuple[Caution, ...]:

@@ -26,6 +26,8 @@ VARIABLES = (
     ("follow_up.vital_status", "alive or dead at last contact"), ("neuro_outcome.cpc", "CPC grade"),
 )  # fmt: skip
 
+OF_SURVIVORS = "CPC grade"  # asked of those who left hospital alive
+
 
 def who_is_counted(audit: Audit) -> Answer:
     """Stages from the records read to the people whose survival is followed; each with what left it and why."""
@@ -39,14 +41,25 @@ def who_is_counted(audit: Audit) -> Answer:
         ColumnOf("remaining", "Remaining", "count", ("at_risk",)),
     )
     cannot = _cannot_tell(audit)
-    table = TableOf("Who is counted, step by step", "Step", "steps", rows, columns, links={("first", "remaining"): "first_runs", ("period", "remaining"): "all_runs"})
+    table = TableOf(
+        "Who is counted, step by step",
+        "Step",
+        "steps",
+        rows,
+        columns,
+        links={("first", "remaining"): "first_runs", ("period", "remaining"): "all_runs"},
+    )
     lines = TableOf(
         "Runs that need a word of their own", "Kind", "lines",
         tuple(RowOf(str(r["group"]), str(r["label"]), {"group": str(r["group"])}) for r in cannot[0]),
         (ColumnOf("runs", "Runs", "count", ("events",)), ColumnOf("treatment", "How they are treated", "word", ("why",))),
         links={(str(r["group"]), "runs"): f"list_{r['group']}" for r in cannot[0] if r["keys"] is not None and len(r["keys"])},
     )  # fmt: skip
-    lists = {f"list_{r['group']}": run_list(str(r["label"]), r["keys"]) for r in cannot[0] if r["keys"] is not None and len(r["keys"])}
+    lists = {
+        f"list_{r['group']}": run_list(str(r["label"]), r["keys"])
+        for r in cannot[0]
+        if r["keys"] is not None and len(r["keys"])
+    }
     lists["all_runs"] = run_list("Runs of the period", cohort.run["run_key"])
     lists["first_runs"] = run_list("First runs", cohort.run.loc[cohort.run["is_first_run"], "run_key"])
     return Answer(
@@ -81,16 +94,45 @@ def _cannot_tell(audit: Audit) -> tuple[list[dict[str, object]], tuple[Caution, 
     later = run[~run["is_first_run"]]
     orphan = later[~later["person_key"].isin(run.loc[run["is_first_run"], "person_key"])]
     lines = [
-        _line("later_runs", "later runs of a person", later, "counted for endings and complications, not for survival"),
-        _line("no_first_run", "later runs whose first run is not in this period", orphan, "the person is not in survival; bounds are given there"),
-        _line("open", "still on support at the extract", run[run["end_kind"] == "open"], "censored then; never counted as survivors"),
-        _line("transferred_in", "transferred in on support", run[run["is_transferred_in"]], "observed from arrival on, if that time is known"),
-        _line("transferred_out", "transferred out on support", run[run["end_kind"] == "transfer_out"], "censored at transfer; their later fate is unknown here"),
+        _line(
+            "later_runs",
+            "later runs of a person",
+            later,
+            "counted for endings and complications, not for survival",
+        ),
+        _line(
+            "no_first_run",
+            "later runs whose first run is not in this period",
+            orphan,
+            "the person is not in survival; bounds are given there",
+        ),
+        _line(
+            "open",
+            "still on support at the extract",
+            run[run["end_kind"] == "open"],
+            "censored then; never counted as survivors",
+        ),
+        _line(
+            "transferred_in",
+            "transferred in on support",
+            run[run["is_transferred_in"]],
+            "observed from arrival on, if that time is known",
+        ),
+        _line(
+            "transferred_out",
+            "transferred out on support",
+            run[run["end_kind"] == "transfer_out"],
+            "censored at transfer; their later fate is unknown here",
+        ),
     ]
     attempts = _attempts(cohort)
     lines.append(attempts)
     open_runs = int((run["end_kind"] == "open").sum())
-    cautions = [Caution("OPEN", "Some runs were still on support at the extract; they are censored, not survivors.")] if open_runs else []
+    cautions = (
+        [Caution("OPEN", "Some runs were still on support at the extract; they are censored, not survivors.")]
+        if open_runs
+        else []
+    )
     return lines, tuple(cautions)
 
 
@@ -102,7 +144,12 @@ def _attempts(cohort: Cohort) -> dict[str, object]:
     told = cohort.source["attempts"] == "included"
     line: dict[str, object] = {"group": "attempts", "label": "attempts that never reached flow", "keys": None}
     if not told.any():
-        return {**line, "events": None, "reason": "not_recorded", "why": "not in the sources: a share of all attempts cannot be given"}
+        return {
+            **line,
+            "events": None,
+            "reason": "not_recorded",
+            "why": "not in the sources: a share of all attempts cannot be given",
+        }
     n = cohort.flow.loc[cohort.flow["stage_no"] == 5, "n"].sum()
     return {**line, "events": int(n), "why": "not in any denominator of runs"}
 
@@ -122,11 +169,22 @@ def completeness(audit: Audit) -> Answer:
     )
     worst = result.table.sort_values(["share", "group"], ascending=[False, True])
     over = worst[(worst["share"] > 0.1)]["group"].tolist()
-    notes = (Caution("MISS", "More than a tenth is missing for: " + ", ".join(map(str, over)) + "."),) if over else ()
+    notes = (
+        (Caution("MISS", "More than a tenth is missing for: " + ", ".join(map(str, over)) + "."),)
+        if over
+        else ()
+    )
     return Answer(
         {"completeness": Result(result.table, result.method, result.counts, notes)},
-        {"completeness": TableOf("How complete the records are, worst first", "Variable", "completeness", rows, columns)},
-        facts={"complete": not over, "worst": str(worst["group"].iloc[0]) if len(worst) and worst["share"].iloc[0] > 0 else ""},
+        {
+            "completeness": TableOf(
+                "How complete the records are, worst first", "Variable", "completeness", rows, columns
+            )
+        },
+        facts={
+            "complete": not over,
+            "worst": str(worst["group"].iloc[0]) if len(worst) and worst["share"].iloc[0] > 0 else "",
+        },
     )
 
 
@@ -136,10 +194,28 @@ def missing_table(cohort: Cohort) -> Result:
     runs = cohort.run[["run_key", "source_key"]]
     for label in dict.fromkeys(label for _, label in VARIABLES):
         fields = [f for f, name in VARIABLES if name == label]
-        rows.append(_variable(cohort, runs, label, fields))
-    shown = [r for r in rows if r["not_carried"] < len(runs)]
+        asked = (
+            runs[cohort.run["is_alive_at_discharge"].fillna(False).astype(bool)]
+            if label == OF_SURVIVORS
+            else runs
+        )
+        rows.append(_variable(cohort, asked, label, fields))
+    shown = [r for r in rows if r["carried"]]
     shown.sort(key=lambda r: (-float(r["share"]), str(r["group"])))
-    return counted(shown, ["group", "events", "missing", "not_applicable", "set_aside", "not_carried", "lacking", "applies", "share"])
+    return counted(
+        [{k: v for k, v in r.items() if k != "carried"} for r in shown],
+        [
+            "group",
+            "events",
+            "missing",
+            "not_applicable",
+            "set_aside",
+            "not_carried",
+            "lacking",
+            "applies",
+            "share",
+        ],
+    )
 
 
 def _variable(cohort: Cohort, runs: pd.DataFrame, label: str, fields: list[str]) -> dict[str, float | str]:
@@ -156,7 +232,7 @@ def _variable(cohort: Cohort, runs: pd.DataFrame, label: str, fields: list[str])
     lacking = missing + aside
     return {
         "group": label, "events": n - missing - aside - apart, "missing": missing, "not_applicable": apart, "set_aside": aside,
-        "not_carried": len(runs) - n, "lacking": lacking, "applies": applies, "share": lacking / applies if applies else 0.0,
+        "not_carried": len(runs) - n, "carried": bool(carried), "lacking": lacking, "applies": applies, "share": lacking / applies if applies else 0.0,
     }  # fmt: skip
 
 

@@ -38,7 +38,12 @@ def endings(audit: Audit, days: list[float], end: float) -> Answer:
     apart = ending_incidence(cohort.ending, days, transfer_competes=True)
     counts, lists = _counts(cohort)
     labels = {k: v for k, v in ENDINGS.items()}
-    shown = {"results": {"curve": "curve", "ticks": "ticks"}, "labels": labels, "words": WORDS, "options": {"end": end}}
+    shown = {
+        "results": {"curve": "curve", "ticks": "ticks"},
+        "labels": labels,
+        "words": WORDS,
+        "options": {"end": end},
+    }
     ticks = Result(tidy([{"time": t} for t in [0.0, *days]], ["time"]), curve.method)
     return Answer(
         {"counts": counts, "curve": curve, "apart": apart, "ticks": ticks, "after": _after_weaning(cohort)},
@@ -46,12 +51,16 @@ def endings(audit: Audit, days: list[float], end: float) -> Answer:
             "endings": _count_table(counts, lists),
             "endings_at": _at_table("curve", "Cumulative incidence of each ending by day", days),
             "endings_risk": _risk_layout(days),
-            "endings_transfer": _at_table("apart", "The same with transfer out as an ending of its own", days),
+            "endings_transfer": _at_table(
+                "apart", "The same with transfer out as an ending of its own", days
+            ),
             "weaned": _weaned_table(),
         },
         {
             "endings_stacked": FigureOf("endings_stacked", "How support ended", "endings_at", **shown),
-            "endings_apart": FigureOf("endings_apart", "Each ending by itself, with its interval", "endings_at", **shown),
+            "endings_apart": FigureOf(
+                "endings_apart", "Each ending by itself, with its interval", "endings_at", **shown
+            ),
         },
         facts={
             "any_open": bool(cohort.ending["is_open"].any()),
@@ -77,7 +86,9 @@ def _counts(cohort: Cohort) -> tuple[Result, dict[str, object]]:
             "alive": int(inside["is_alive_at_discharge"].fillna(False).sum()), "known": int(known.sum()), "unknown": int((~known).sum()),
         }  # fmt: skip
         if len(hours) and name != "still on support":
-            row |= dict(zip(("median", "lower", "upper"), np.quantile(hours, [0.5, 0.25, 0.75]).tolist(), strict=True))
+            row |= dict(
+                zip(("median", "lower", "upper"), np.quantile(hours, [0.5, 0.25, 0.75]).tolist(), strict=True)
+            )
         else:
             row["reason"] = "not_applicable"
         rows.append(row)
@@ -86,7 +97,10 @@ def _counts(cohort: Cohort) -> tuple[Result, dict[str, object]]:
     died, withdrawn = run[run["end_kind"] == "death"], run[run["end_kind"] == "withdrawal"]
     for key, part in (("death on support", died), ("support withdrawn", withdrawn)):
         rows.append({"group": key, "events": len(part), "at_risk": len(run)} | _fate(part))
-    return counted(rows, ["group", "events", "at_risk", "alive", "known", "unknown", "median", "lower", "upper", "reason"]), lists
+    return counted(
+        rows,
+        ["group", "events", "at_risk", "alive", "known", "unknown", "median", "lower", "upper", "reason"],
+    ), lists
 
 
 def _fate(part: pd.DataFrame) -> dict[str, object]:
@@ -97,7 +111,9 @@ def _fate(part: pd.DataFrame) -> dict[str, object]:
     }  # fmt: skip
     if not len(hours):
         return row | {"reason": "not_applicable"}
-    return row | dict(zip(("median", "lower", "upper"), np.quantile(hours, [0.5, 0.25, 0.75]).tolist(), strict=True))
+    return row | dict(
+        zip(("median", "lower", "upper"), np.quantile(hours, [0.5, 0.25, 0.75]).tolist(), strict=True)
+    )
 
 
 def _count_table(counts: Result, lists: dict[str, object]) -> TableOf:
@@ -108,28 +124,58 @@ def _count_table(counts: Result, lists: dict[str, object]) -> TableOf:
     rows = rows_of({key: labels[key] for key in order})
     columns = (
         ColumnOf("runs", "Runs", "x_of_n", ("events", "at_risk")),
-        ColumnOf("hours", "Time on support, median (25th to 75th percentile)", "duration_quartiles", ("median", "lower", "upper")),
+        ColumnOf(
+            "hours",
+            "Time on support, median (25th to 75th percentile)",
+            "duration_quartiles",
+            ("median", "lower", "upper"),
+        ),
         ColumnOf("alive", "Left hospital alive, of those known", "x_of_n", ("alive", "known")),
         ColumnOf("unknown", "Not known", "count", ("unknown",)),
     )
     links = {(slug(k.removeprefix("end_")), "runs"): k for k in lists}
-    return TableOf("How support ended", "Ending", "counts", rows, columns, links={k: v for k, v in links.items() if k[0] in {r.key for r in rows}})
+    return TableOf(
+        "How support ended",
+        "Ending",
+        "counts",
+        rows,
+        columns,
+        links={k: v for k, v in links.items() if k[0] in {r.key for r in rows}},
+    )
 
 
 def _at_table(result: str, caption: str, days: list[float]) -> TableOf:
     """A row an ending, two columns a day."""
-    names = dict(ENDINGS) | ({"transfer out": "transferred out"} if result == "apart" else {}) | {"still supported": "still supported"}
+    names = (
+        dict(ENDINGS)
+        | ({"transfer out": "transferred out"} if result == "apart" else {})
+        | {"still supported": "still supported"}
+    )
     columns = []
     for d in days:
-        columns.append(ColumnOf(f"day_{d:g}", "Share", "percent", ("estimate", "n"), {"time": d}, over=f"by day {d:g}"))
-        columns.append(ColumnOf(f"day_{d:g}_ci", "", "percent_interval", ("lower", "upper", "n"), {"time": d}, over=f"by day {d:g}"))
+        columns.append(
+            ColumnOf(f"day_{d:g}", "Share", "percent", ("estimate", "n"), {"time": d}, over=f"by day {d:g}")
+        )
+        columns.append(
+            ColumnOf(
+                f"day_{d:g}_ci",
+                "",
+                "percent_interval",
+                ("lower", "upper", "n"),
+                {"time": d},
+                over=f"by day {d:g}",
+            )
+        )
     return TableOf(caption, "Ending", result, rows_of(names, "cause"), tuple(columns))
 
 
 def _risk_layout(days: list[float]) -> TableOf:
     """How many runs were on support and observed just before each day: what the shares of that day stand on."""
     rows = tuple(RowOf(f"day_{d:g}", f"day {d:g}", {"time": d, "cause": "still supported"}) for d in days)
-    columns = (ColumnOf("day", "Day", "time", ("time",)), ColumnOf("at_risk", "Runs at risk", "count", ("at_risk",)))
+    columns = (
+        ColumnOf("day", "Day", "time", ("time",)),
+        ColumnOf("at_risk", "Runs at risk", "count", ("at_risk",)),
+    )
     return TableOf("Runs at risk, by day", "Just before", "curve", rows, columns)
 
 
@@ -160,7 +206,11 @@ def _after_weaning(cohort: Cohort) -> Result:
 
 
 def _weaned_table() -> TableOf:
-    labels = {"again_48h": "supported again within 48 hours", "again_30d": "supported again within 30 days", "home": "left hospital alive"}
+    labels = {
+        "again_48h": "supported again within 48 hours",
+        "again_30d": "supported again within 30 days",
+        "home": "left hospital alive",
+    }
     columns = (
         ColumnOf("runs", "Runs", "x_of_n", ("events", "at_risk")),
         ColumnOf("share", "Share", "percent", ("estimate", "at_risk")),

@@ -65,7 +65,9 @@ _ENDS = {
 def _endings(cohort: Cohort) -> Result:
     run = cohort.run
     weaned = run[run["end_kind"] == "recovery"]
-    n_of = {name: int((run["pathway"] == name).sum()) for name in (*CAUSES, "transfer out", "still on support")}
+    n_of = {
+        name: int((run["pathway"] == name).sum()) for name in (*CAUSES, "transfer out", "still on support")
+    }
     home = int(weaned["is_alive_at_discharge"].fillna(False).sum())
     values = [n_of["recovery"], home, n_of["durable LVAD"], n_of["transplantation"], n_of["death or withdrawal"], n_of["other exit"],
               n_of["transfer out"], n_of["still on support"]]  # fmt: skip
@@ -80,12 +82,21 @@ def _outcomes(cohort: Cohort, when: str) -> list[tuple[dict[str, object], Method
     alive = ended[~ended["end_kind"].isin(["death", "withdrawal"])]
     known = run[run["is_alive_at_discharge"].notna()]
     home = int(known["is_alive_at_discharge"].astype(bool).sum())
-    rows = [_share("end", when, len(alive), len(ended), len(run) - len(ended)), _share("discharge", when, home, len(known), len(run) - len(known))]
+    rows = [
+        _share("end", when, len(alive), len(ended), len(run) - len(ended)),
+        _share("discharge", when, home, len(known), len(run) - len(known)),
+    ]
     people = first_runs(cohort)
     table, _ = horizon_table(cohort, people)
     point = table[table["time"] == 30.0].iloc[0]
     n = int(point["persons"])
-    day_30: dict[str, object] = {"group": "day_30", "when": when, "at_risk": n, "unknown": int(point["not_yet"]), "events": None}
+    day_30: dict[str, object] = {
+        "group": "day_30",
+        "when": when,
+        "at_risk": n,
+        "unknown": int(point["not_yet"]),
+        "events": None,
+    }
     day_30 |= {c: point[c] for c in ("estimate", "lower", "upper")}
     if pd.notna(point["reason"]):
         day_30["reason"] = point["reason"]
@@ -107,7 +118,11 @@ def _size(audit: Audit) -> Result:
         if cohort is None:
             continue
         days = float(cohort.run["support_h"].fillna(0).sum()) / 24.0
-        for key, value in (("runs", len(cohort.run)), ("people", int(cohort.run["person_key"].nunique())), ("days", days)):
+        for key, value in (
+            ("runs", len(cohort.run)),
+            ("people", int(cohort.run["person_key"].nunique())),
+            ("days", days),
+        ):
             rows.append({"group": key, "cause": when, "estimate": float(value)})
     return Result(tidy(rows, ["group", "cause", "estimate"]), COUNTED)
 
@@ -124,13 +139,34 @@ def _outcome_layout(audit: Audit) -> TableOf:
     columns = [
         ColumnOf("of", "Of", "count", ("at_risk",), {"when": "now"}, over=audit.label),
         ColumnOf("share", "Share", "percent", ("estimate", "at_risk"), {"when": "now"}, over=audit.label),
-        ColumnOf("interval", "", "percent_interval", ("lower", "upper", "at_risk"), {"when": "now"}, over=audit.label),
+        ColumnOf(
+            "interval",
+            "",
+            "percent_interval",
+            ("lower", "upper", "at_risk"),
+            {"when": "now"},
+            over=audit.label,
+        ),
         ColumnOf("of_100", "In words", "of_100", ("estimate", "at_risk"), {"when": "now"}, over=audit.label),
-        ColumnOf("unknown", "Not known or not so long ago", "count", ("unknown",), {"when": "now"}, over=audit.label),
+        ColumnOf(
+            "unknown",
+            "Not known or not so long ago",
+            "count",
+            ("unknown",),
+            {"when": "now"},
+            over=audit.label,
+        ),
     ]
     if audit.before is not None:
         columns += [
-            ColumnOf("before", "Share", "percent", ("estimate", "at_risk"), {"when": "before"}, over=audit.label_before),
+            ColumnOf(
+                "before",
+                "Share",
+                "percent",
+                ("estimate", "at_risk"),
+                {"when": "before"},
+                over=audit.label_before,
+            ),
             ColumnOf("difference", "Difference", "points", ("estimate", "at_risk"), {}, "difference"),
             ColumnOf("difference_ci", "", "points_interval", ("lower", "upper", "at_risk"), {}, "difference"),
         ]
@@ -141,12 +177,16 @@ def _differences(outcome: pd.DataFrame) -> Result:
     """This period minus the period before, Newcombe; for day 30 there is no simple difference of counts."""
     rows, method = [], Method("difference of proportions")
     for key in LINES:
-        now, before = (outcome[(outcome["group"] == key) & (outcome["when"] == w)].iloc[0] for w in ("now", "before"))
+        now, before = (
+            outcome[(outcome["group"] == key) & (outcome["when"] == w)].iloc[0] for w in ("now", "before")
+        )
         row: dict[str, object] = {"group": key, "at_risk": min(int(now["at_risk"]), int(before["at_risk"]))}
         if pd.isna(now["events"]) or pd.isna(before["events"]) or not now["at_risk"] or not before["at_risk"]:
             row["reason"] = "not_applicable"
         else:
-            one = proportion_difference(int(now["events"]), int(now["at_risk"]), int(before["events"]), int(before["at_risk"]))
+            one = proportion_difference(
+                int(now["events"]), int(now["at_risk"]), int(before["events"]), int(before["at_risk"])
+            )
             method = one.method
             row |= {c: one.table.iloc[0][c] for c in ("estimate", "lower", "upper")}
         rows.append(row)
@@ -160,7 +200,11 @@ def _change(difference: Result | None) -> str:
     row = difference.table[difference.table["group"] == "discharge"].iloc[0]
     if pd.isna(row["lower"]):
         return ""
-    return "compatible with no change" if row["lower"] <= 0 <= row["upper"] else "larger than chance alone would usually give"
+    return (
+        "compatible with no change"
+        if row["lower"] <= 0 <= row["upper"]
+        else "larger than chance alone would usually give"
+    )
 
 
 ANALYSES = {"overview": overview}

@@ -15,15 +15,25 @@ def runs_listed(audit: Audit) -> Answer:
     run = audit.current.run
     if run.empty:
         raise NotEstimable("no_runs", "No run is in this period.")
-    events = audit.current.complication.groupby("run_key")["n_events"].sum() if len(audit.current.complication) else pd.Series(dtype=float)
-    aside = audit.current.missing[audit.current.missing["missing_kind"] == "set_aside"].groupby("run_key").size()
+    events = (
+        audit.current.complication.groupby("run_key")["n_events"].sum()
+        if len(audit.current.complication)
+        else pd.Series(dtype=float)
+    )
+    aside = (
+        audit.current.missing[audit.current.missing["missing_kind"] == "set_aside"].groupby("run_key").size()
+    )
     rows = []
     for record in run.sort_values(["run_year", "run_key"]).itertuples():
         rows.append({
             "group": short_key(record.run_key), "year": str(record.run_year), "ended": _word(record.end_kind), "home": _fate(record.is_alive_at_discharge),
             "exposure": record.support_h, "events": int(events.get(record.run_key, 0)), "flag": _flag(record, int(aside.get(record.run_key, 0))),
         })  # fmt: skip
-    result = counted(rows, ["group", "exposure", "events", "year", "ended", "home", "flag"], words=("year", "ended", "home", "flag"))
+    result = counted(
+        rows,
+        ["group", "exposure", "events", "year", "ended", "home", "flag"],
+        words=("year", "ended", "home", "flag"),
+    )
     layout = tuple(RowOf(f"r_{r['group']}", str(r["group"]), {"group": str(r["group"])}) for r in rows)
     columns = (
         ColumnOf("year", "Year", "word", ("year",)),
@@ -33,7 +43,9 @@ def runs_listed(audit: Audit) -> Answer:
         ColumnOf("events", "Complication events", "count", ("events",)),
         ColumnOf("flag", "To look at", "word", ("flag",)),
     )
-    return Answer({"runs": result}, {"runs_listed": TableOf("Runs of the period", "Run", "runs", layout, columns)})
+    return Answer(
+        {"runs": result}, {"runs_listed": TableOf("Runs of the period", "Run", "runs", layout, columns)}
+    )
 
 
 def _word(kind: object) -> str:

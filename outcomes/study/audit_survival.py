@@ -15,7 +15,21 @@ from outcomes.study.audit_data import Audit
 from outcomes.study.shape import DAY, counted, first_runs, run_list
 
 HORIZONS = (30, 90, 180, 365)
-_COLUMNS = ["time", "estimate", "lower", "upper", "at_risk", "events", "persons", "not_yet", "low_news", "high_news", "worst", "best", "reason"]
+_COLUMNS = [
+    "time",
+    "estimate",
+    "lower",
+    "upper",
+    "at_risk",
+    "events",
+    "persons",
+    "not_yet",
+    "low_news",
+    "high_news",
+    "worst",
+    "best",
+    "reason",
+]
 
 
 def survival(audit: Audit, days: list[float]) -> Answer:
@@ -57,7 +71,11 @@ def horizon_table(cohort: Cohort, people: pd.DataFrame) -> tuple[pd.DataFrame, t
     aside = _left_out(cohort)
     for day in HORIZONS:
         could = people[people[f"observable_to_day_{day}"].astype(bool)]
-        row: dict[str, object] = {"time": float(day), "persons": len(could), "not_yet": len(people) - len(could)}
+        row: dict[str, object] = {
+            "time": float(day),
+            "persons": len(could),
+            "not_yet": len(people) - len(could),
+        }
         try:
             row |= _at(could, float(day), aside)
         except NotEstimable as reason:
@@ -102,11 +120,21 @@ def _at_columns(news: bool) -> tuple[ColumnOf, ...]:
         ColumnOf("survival", "Survival", "percent", ("estimate", "persons")),
         ColumnOf("interval", "", "percent_interval", ("lower", "upper", "persons")),
         ColumnOf("of_100", "In words", "of_100", ("estimate", "persons")),
-        ColumnOf("bounds", "Had all set aside died, or lived", "percent_interval", ("worst", "best", "persons")),
+        ColumnOf(
+            "bounds", "Had all set aside died, or lived", "percent_interval", ("worst", "best", "persons")
+        ),
         ColumnOf("not_yet", "Not yet so long ago", "count", ("not_yet",)),
     ]
     if news:
-        columns.insert(7, ColumnOf("news", "Deaths at the last day known alive, or at the news", "percent_interval", ("low_news", "high_news", "persons")))
+        columns.insert(
+            7,
+            ColumnOf(
+                "news",
+                "Deaths at the last day known alive, or at the news",
+                "percent_interval",
+                ("low_news", "high_news", "persons"),
+            ),
+        )
     return tuple(columns)
 
 
@@ -119,8 +147,19 @@ def risk_table(people: pd.DataFrame, ticks: list[float]) -> Result:
     for tick in ticks:
         gone = time < tick
         inside = (time >= tick) & ((entry < tick) | (entry <= 0))
-        rows.append({"group": "", "time": tick, "at_risk": int(inside.sum()), "events": int((gone & died).sum()), "censored": int((gone & ~died).sum())})
-    return Result(tidy(rows, ["group", "time", "at_risk", "events", "censored"]), Method("counts of persons", time_unit="days"))
+        rows.append(
+            {
+                "group": "",
+                "time": tick,
+                "at_risk": int(inside.sum()),
+                "events": int((gone & died).sum()),
+                "censored": int((gone & ~died).sum()),
+            }
+        )
+    return Result(
+        tidy(rows, ["group", "time", "at_risk", "events", "censored"]),
+        Method("counts of persons", time_unit="days"),
+    )
 
 
 def discharge_table(cohort: Cohort, people: pd.DataFrame) -> Result:
@@ -141,19 +180,37 @@ def discharge_table(cohort: Cohort, people: pd.DataFrame) -> Result:
         except NotEstimable as reason:
             row["reason"] = reason.reason_code
         rows.append(row)
-    columns = ["group", "events", "at_risk", "total", "unknown", "inpatient", "estimate", "lower", "upper", "worst", "best", "reason"]
+    columns = [
+        "group",
+        "events",
+        "at_risk",
+        "total",
+        "unknown",
+        "inpatient",
+        "estimate",
+        "lower",
+        "upper",
+        "worst",
+        "best",
+        "reason",
+    ]
     return Result(tidy(rows, columns), method) if method else counted(rows, columns)
 
 
 def _discharge_layout() -> TableOf:
-    rows = (RowOf("people", "people, by their first run", {"group": "people"}), RowOf("runs", "all runs", {"group": "runs"}))
+    rows = (
+        RowOf("people", "people, by their first run", {"group": "people"}),
+        RowOf("runs", "all runs", {"group": "runs"}),
+    )
     columns = (
         ColumnOf("alive", "Left hospital alive, of those known", "x_of_n", ("events", "at_risk")),
         ColumnOf("share", "Share", "percent", ("estimate", "at_risk")),
         ColumnOf("interval", "", "percent_interval", ("lower", "upper", "at_risk")),
         ColumnOf("unknown", "Not known", "count", ("unknown",)),
         ColumnOf("inpatient", "Of these still in hospital", "count", ("inpatient",)),
-        ColumnOf("bounds", "Had all not known died, or lived", "percent_interval", ("worst", "best", "total")),
+        ColumnOf(
+            "bounds", "Had all not known died, or lived", "percent_interval", ("worst", "best", "total")
+        ),
     )
     return TableOf("Alive at hospital discharge", "Counted", "discharge", rows, columns)
 

@@ -11,7 +11,21 @@ from outcomes.study.answer import Answer, ColumnOf, RowOf, TableOf
 from outcomes.study.audit_data import Audit
 from outcomes.study.shape import DAY, counted
 
-_COLUMNS = ["group", "time", "runs", "people", "support_days", "weaned", "events", "at_risk", "estimate", "lower", "upper", "unknown", "reason"]
+_COLUMNS = [
+    "group",
+    "time",
+    "runs",
+    "people",
+    "support_days",
+    "weaned",
+    "events",
+    "at_risk",
+    "estimate",
+    "lower",
+    "upper",
+    "unknown",
+    "reason",
+]
 
 
 def years(audit: Audit) -> Answer:
@@ -36,7 +50,11 @@ def years(audit: Audit) -> Answer:
             row["reason"] = reason.reason_code
         rows.append(row)
     result = Result(tidy(rows, _COLUMNS), method) if method else counted(rows, _COLUMNS)
-    return Answer({"years": result}, {"years": _layout(result.table)}, facts={"few_years": len(rows) < 12, "one_year": len(rows) < 2})
+    return Answer(
+        {"years": result},
+        {"years": _layout(result.table)},
+        facts={"few_years": len(rows) < 12, "one_year": len(rows) < 2},
+    )
 
 
 def _layout(table: pd.DataFrame) -> TableOf:

@@ -23,9 +23,16 @@ ENDINGS = {
 CAUSES = tuple(ENDINGS)
 
 
-def counted(rows: Sequence[Mapping[str, object]], columns: Sequence[str], words: Sequence[str] = (), notes: tuple[Caution, ...] = ()) -> Result:
+def counted(
+    rows: Sequence[Mapping[str, object]],
+    columns: Sequence[str],
+    words: Sequence[str] = (),
+    notes: tuple[Caution, ...] = (),
+) -> Result:
     """A result of counts. words: columns that hold text and are none of the standard text columns."""
-    table = tidy([{k: v for k, v in r.items() if k not in words} for r in rows], [c for c in columns if c not in words])
+    table = tidy(
+        [{k: v for k, v in r.items() if k not in words} for r in rows], [c for c in columns if c not in words]
+    )
     for name in words:
         table[name] = pd.array([r.get(name) for r in rows], dtype="string")
     return Result(table, COUNTED, {}, notes)
