@@ -23,7 +23,7 @@ from outcomes.store.connect import SCHEMA_VERSION, connect, harden, open_for_rea
 from outcomes.store.ledger import verify, write_states
 from outcomes.store.linkfile import CalendarEntry, calendar_bytes, identities_bytes, read_calendar, read_identities
 from outcomes.store.merge import Merge, compare, note_carried_before
-from outcomes.store.recover import Places, mark_of, pending_mark, recover
+from outcomes.store.recover import Places, put_all_in_place, recover
 from outcomes.store.run_order import run_order
 from outcomes.store.schema import create_store
 from outcomes.store.settle import Counts, apply_effects, list_findings, settle_keys, settle_rows
@@ -231,14 +231,7 @@ class _Job:
         _verify_new(new)
         files.fsync_file(new)
         places = self.request.places
-        files.write_private(pending_mark(places.store), mark_of(self.batch, link, calendar))
-        files.put_in_place(link, places.link)
-        if calendar is not None:
-            files.put_in_place(calendar, places.calendar)
-        files.put_in_place(new, places.store)
-        for path in (places.link, places.calendar, places.store):
-            files.drop_before(path)
-        pending_mark(places.store).unlink()
+        put_all_in_place(places, self.batch, new, link, calendar)
 
     def _companions(self) -> tuple[Path, Path | None]:
         """New link file and calendar file in the work folder; identifiers of rows that were not stored are forgotten."""

@@ -7,7 +7,7 @@ from pathlib import Path
 
 from outcomes.errors import StoreProblem
 from outcomes.store.connect import connect, open_for_reading
-from outcomes.store.files import BEFORE, beside, drop_before, require_private, sha256_of, sweep
+from outcomes.store.files import BEFORE, beside, drop_before, fsync_folder, put_in_place, require_private, sha256_of, sweep, write_private
 from outcomes.store.ledger import batch_number, verify
 from outcomes.store.linkfile import CALENDAR, LINK, require_unchanged
 
@@ -65,6 +65,23 @@ def recover(places: Places) -> int:
     return batch
 
 
+def put_all_in_place(places: Places, batch: int, new: Path, link: Path, calendar: Path | None) -> None:
+    """Let the three new files take the places of the old ones, the store last: it decides which generation holds.
+
+    Wherever this stops, `recover` finds out by the mark.
+    """
+    mark = pending_mark(places.store)
+    write_private(mark, mark_of(places, batch, link, calendar))
+    fsync_folder(mark.parent)
+    put_in_place(link, places.link)
+    if calendar is not None:
+        put_in_place(calendar, places.calendar)
+    put_in_place(new, places.store)
+    for path in (places.link, places.calendar, places.store):
+        drop_before(path)
+    mark.unlink()
+
+
 def pending_mark(store: Path) -> Path:
     """A file that exists while the three files are being replaced, and says which companions are the new ones.
 
@@ -73,9 +90,12 @@ def pending_mark(store: Path) -> Path:
     return store.parent / f".{store.name}.pending"
 
 
-def mark_of(batch: int, link: Path, calendar: Path | None) -> bytes:
-    """Content of the mark: the batch under way and the hashes of its link file and calendar file."""
-    return " ".join([str(batch), sha256_of(link), sha256_of(calendar) if calendar else "-"]).encode()
+def mark_of(places: Places, batch: int, link: Path, calendar: Path | None) -> bytes:
+    """Content of the mark: the batch under way, then of link file and calendar file the new hash and whether there was one."""
+    words = [str(batch)]
+    for new, path in ((link, places.link), (calendar, places.calendar)):
+        words += [sha256_of(new) if new else "-", "replaced" if path.exists() else "made"]
+    return " ".join(words).encode()
 
 
 def _settle(places: Places, mark: list[str], batch: int) -> None:
@@ -83,16 +103,22 @@ def _settle(places: Places, mark: list[str], batch: int) -> None:
 
     A mark that is not complete was being written when the program died: nothing had been replaced yet.
     """
-    interrupted = len(mark) == 3 and int(mark[0]) > batch
-    for path, new in zip((places.link, places.calendar), mark[1:] if interrupted else (), strict=False):
-        before = Path(str(path) + BEFORE)
-        if path.exists() and sha256_of(path) == new:
-            if before.exists():
-                before.replace(path)
-            else:
-                path.unlink()
+    if len(mark) == 5 and int(mark[0]) > batch:
+        _step_back(places.link, mark[1], mark[2])
+        _step_back(places.calendar, mark[3], mark[4])
     for path in (places.link, places.calendar, places.store):
         drop_before(path)
+
+
+def _step_back(path: Path, new: str, was: str) -> None:
+    """Undo the replacement of one companion, if it had come to that."""
+    if not path.exists() or sha256_of(path) != new:
+        return
+    before = Path(str(path) + BEFORE)
+    if before.exists():
+        before.replace(path)
+    elif was == "made":
+        path.unlink()
 
 
 def _require_companions(places: Places) -> None:
