@@ -31,7 +31,7 @@ def sheets_of(mapping: Mapping) -> list[tuple[int, str, Sheet]]:
     return [(i, key, sheet) for i, (key, sheet) in enumerate(listed)]
 
 
-def load_pieces(con: duckdb.DuckDBPyConnection, mapping: Mapping, lists: dict[str, dict[str, str]]) -> dict[int, list]:
+def load_pieces(con: duckdb.DuckDBPyConnection, mapping: Mapping, lists: dict[str, dict[str, str]]) -> dict[int, list[tuple[Column, list[int]]]]:
     """Create staging.piece, staging.code and staging.missing_token; return per sheet its columns with piece numbers.
 
     lists: key of a code-list sheet -> code text -> meaning.

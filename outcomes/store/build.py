@@ -26,7 +26,7 @@ def _fill_table(con: duckdb.DuckDBPyConnection, table: str, old: bool) -> None:
     number = NUMBERED.get(table)
     names = [c for c in columns_of(table) if c != number]
     picks = ", ".join(f'"{c}"' for c in names)
-    taken = f"select run_key from work.change where table_name = '{table}' and state in ('new', 'changed')"
+    taken = f"select run_key from work.change where table_name = '{table}' and state in ('new', 'changed', 'later')"
     parts = [f"select {picks} from candidate.{table} where line is not null and run_key in ({taken})"]
     if old:
         if table == "missing_value":

@@ -35,7 +35,7 @@ def all_checks() -> tuple[Check, ...]:
 
 def _read(stem: str, text: str) -> Check:
     head: dict[str, str] = {}
-    body = []
+    body: list[str] = []
     for line in text.splitlines():
         if line.startswith("-- ") and ":" in line and not body:
             key, _, value = line[3:].partition(":")

@@ -9,7 +9,7 @@ import duckdb
 from outcomes.errors import OutcomesError, StoreBusy, StoreProblem
 
 SCHEMA_VERSION = 1
-_CONFIG = {
+_CONFIG: dict[str, str | bool | int | float | list[str]] = {
     "autoinstall_known_extensions": "false",
     "autoload_known_extensions": "false",
     "allow_community_extensions": "false",

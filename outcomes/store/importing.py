@@ -6,7 +6,9 @@ import datetime as dt
 import os
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 from pathlib import Path
+from typing import BinaryIO
 
 import duckdb
 
@@ -14,7 +16,7 @@ from outcomes.errors import DataRefused, UsageError
 from outcomes.findings import Finding, in_order
 from outcomes.intake.identify import Identities
 from outcomes.intake.mapping import Mapping
-from outcomes.intake.take_in import Intake, take_in
+from outcomes.intake.take_in import Intake, Opener, take_in
 from outcomes.intake.unit_evidence import require_units
 from outcomes.store import files
 from outcomes.store.build import fill_ledger, fill_store
@@ -160,7 +162,7 @@ class _Job:
         starts = {key: entry.start_utc for key, entry in self.calendar.items()}
         stored, accepted = self._stored_runs(), self._accepted_runs()
         timed = {k: s for k, s in starts.items() if k in accepted}
-        openers = {key: (lambda p=path: p.open("rb")) for key, path in self.request.paths.items()}
+        openers: dict[str, Opener] = {key: partial(_open, path) for key, path in self.request.paths.items()}
         self.intake = take_in(self.request.mapping, openers, self.identities, timed, bench.sink, self.request.progress)
         staging = self.intake.staging.con
         require_units(staging)
@@ -268,6 +270,10 @@ class _Job:
             "runs_replaced": merge.changed, "link_sha256": files.sha256_of(link),
             "calendar_sha256": files.sha256_of(calendar) if calendar else None,
         }  # fmt: skip
+
+
+def _open(path: Path) -> BinaryIO:
+    return path.open("rb")
 
 
 def _naive(moment: dt.datetime) -> dt.datetime:

@@ -95,4 +95,4 @@ def _load(path: Path, code: str) -> dict[str, Any]:
         ok = False
     if not ok:
         raise StoreProblem(f"{code}.DAMAGED", "the file cannot be read", todo="restore it from a backup")
-    return body
+    return dict(body)

@@ -10,13 +10,13 @@ from outcomes.errors import DataRefused
 from outcomes.findings import Finding
 from outcomes.intake.mapping import Mapping
 from outcomes.intake.rules import RULES
-from outcomes.store.schema import record_columns, tables_by_run, value_columns
+from outcomes.store.schema import HORIZON, record_columns, tables_by_run, value_columns
 
 
 @dataclass(frozen=True)
 class Merge:
-    """Runs of the batch by what happens to them. beside_runs: attempts and declarations of the source that are new or
-    changed."""
+    """Runs of the batch by what happens to them. beside_runs: attempts and declarations of the source that are new
+    or changed, and runs that could now be followed for longer."""
 
     new: int
     unchanged: int
@@ -41,7 +41,7 @@ def merged_tables() -> list[str]:
 def compare(con: duckdb.DuckDBPyConnection, mapping: Mapping, *, old: bool, replace: bool, batch: int) -> Merge:
     """Fill work.change(run_key, table_name, state) and refuse conflicts unless `replace`.
 
-    state: new (nothing stored under this run and table), same, changed. Raises DataRefused ROW.CONFLICT or
+    state: new (nothing stored under this run and table), same, changed, or later (the same, but seen for longer). Raises DataRefused ROW.CONFLICT or
     SOURCE.CHANGED.
     """
     con.execute("create or replace table work.change (run_key varchar, table_name varchar, state varchar, earlier_hash varchar)")
@@ -51,7 +51,7 @@ def compare(con: duckdb.DuckDBPyConnection, mapping: Mapping, *, old: bool, repl
     beside = 0
     if old:
         _compare_persons(con)
-        beside = _compare_source(con, mapping, replace) + _compare_attempts(con, replace)
+        beside = _compare_source(con, mapping, replace) + _compare_attempts(con, replace) + _later_horizons(con)
     merge = _count(con, beside)
     if merge.changed and not replace:
         findings = _conflicts(con, batch)
@@ -136,6 +136,18 @@ def _compare_persons(con: duckdb.DuckDBPyConnection) -> None:
     )
 
 
+def _later_horizons(con: duckdb.DuckDBPyConnection) -> int:
+    """Runs that say the same as before, but that this extract could follow for longer: they are stored anew."""
+    columns = ", ".join(HORIZON)
+    con.execute(
+        f"""update work.change set state = 'later' where table_name = 'support_run' and state = 'same' and run_key in (
+          select run_key from (select run_key, {columns} from candidate.support_run where line is not null
+            except select run_key, {columns} from old.record.support_run))"""
+    )
+    row = con.execute("select count(*) from work.change where state = 'later'").fetchone()
+    return int(row[0]) if row else 0
+
+
 def _compare_attempts(con: duckdb.DuckDBPyConnection, replace: bool) -> int:
     """How many attempts are new or changed; changed ones are refused unless `replace`."""
     if not con.execute("select 1 from duckdb_tables() where schema_name = 'incoming' and table_name = 'cannulation_attempt'").fetchone():
@@ -205,7 +217,8 @@ def _count(con: duckdb.DuckDBPyConnection, beside_runs: int) -> Merge:
         from (select run_key, case when bool_or(state = 'changed') then 'changed' when bool_or(state = 'new') then 'new' else 'same' end as state
               from work.change group by run_key)"""
     ).fetchone()
-    return Merge(*(int(v) for v in row or (0, 0, 0)), beside_runs)
+    new, same, changed = row or (0, 0, 0)
+    return Merge(int(new), int(same), int(changed), beside_runs)
 
 
 def _conflicts(con: duckdb.DuckDBPyConnection, batch: int) -> list[Finding]:

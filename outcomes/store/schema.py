@@ -30,6 +30,8 @@ NUMBERED_WITHIN = {"measurement": ("run_key", "analyte", "window_label"), "vasoa
 NOT_BY_RUN = ("person", "source", "complication_coverage", "cannulation_attempt")
 # Position among the runs of a person; it may change when an earlier run arrives, which is no conflict.
 POSITION = ("nth_run", "hours_from_first_run")
+# What the source could have seen of a run: it grows with every later extract, which is no conflict either.
+HORIZON = ("observable_to_day_30", "observable_to_day_90", "observable_to_day_180", "observable_to_day_365")
 
 _LEDGER = """
 create schema ledger;
@@ -83,8 +85,8 @@ def record_columns() -> dict[str, tuple[tuple[str, str], ...]]:
 
 
 def value_columns(table: str) -> list[str]:
-    """Columns that hold what was recorded: neither the run, nor the numbering, nor the position of the run."""
-    without = {"run_key", NUMBERED.get(table, ""), *POSITION}
+    """Columns that hold what was recorded: neither the run, nor the numbering, nor its position, nor its horizon."""
+    without = {"run_key", NUMBERED.get(table, ""), *POSITION, *HORIZON}
     return [c for c, _ in record_columns()[table] if c not in without]
 
 

@@ -154,7 +154,7 @@ _PICKS = {
     ("support_end", "end_kind"): "case when i.is_open and i.end_kind is null then 'open' else i.end_kind end",
     ("hospital_outcome", "is_still_inpatient"): "coalesce(i.is_still_inpatient, false) or coalesce(i.discharge_to = 'still_inpatient', false)",
     ("hospital_outcome", "discharge_to"): "nullif(i.discharge_to, 'still_inpatient')",
-    ("hospital_outcome", "is_alive_at_discharge"): "coalesce(i.is_alive_at_discharge, i.discharge_to <> 'died' and i.discharge_to <> 'still_inpatient')",
+    ("hospital_outcome", "is_alive_at_discharge"): "coalesce(i.is_alive_at_discharge, nullif(i.discharge_to, 'still_inpatient') <> 'died')",
 }
 _MERGES = {c: 'bool_or("{c}")' for c in ("is_still_inpatient", "age_is_uncertain", "age_topcoded", "plan_is_from_start")}
 _PERSONS = "(select person_key from work.run_name where person_key is not null)"

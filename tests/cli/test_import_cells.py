@@ -141,3 +141,25 @@ def test_an_offset_in_the_cell_wins_over_the_declared_zone(desk: Desk) -> None:
     assert desk.ask("select end_h from record.support_end") == [(1.0,)]
     code, out, _ = desk.bring(mapped, [row.replace("10:00Z", "11:00")])
     assert code == 3 and "CELL.DATE" in out
+
+
+def test_where_somebody_went_says_whether_alive_and_still_in_hospital_says_neither(desk: Desk) -> None:
+    mapped = Mapped()
+    mapped.columns["Home"] = (
+        'field = "hospital_outcome.discharge_to", codes = { home = "home", dead = "died", here = "still_inpatient" }, blank = "not recorded"'
+    )
+    rows = [row.replace(",yes,", f",{where},").replace(",no,", ",dead,") for row, where in zip(ROWS, ("home", "", "here", ""), strict=True)]
+    code, out, err = desk.bring(mapped, rows)
+    assert code == 0, out + err
+    found = desk.ask("select is_alive_at_discharge, is_still_inpatient, discharge_to from record.hospital_outcome order by all")
+    assert found == [(False, False, "died"), (True, False, "home"), (None, True, None)]
+
+
+def test_an_event_long_after_support_is_set_aside_and_its_absence_is_not_a_no(desk: Desk) -> None:
+    late = ROWS[0] + "2021-03-20 10:00"
+    code, out, _ = desk.bring(Mapped(), [late, *ROWS[1:]], options=("--set-aside",))
+    assert code == 0 and "CHECK.LONG-AFTER-END (cell) runs/runs line 2, Stroke" in out
+    assert desk.ask("select count(*) from record.complication_event") == [(1,)]
+    assert desk.ask("select missing_kind, count(*) from record.missing_value where field = 'complication.stroke' group by 1 order by 1") == [
+        ("none", 2), ("set_aside", 1),
+    ]  # fmt: skip
