@@ -25,14 +25,13 @@ from outcomes.analysis.risk_set import (
     TIES,
     Sample,
     at_risk,
-    empties_at,
     increments,
     risk_set,
     sample,
     step_at,
     survival_steps,
 )
-from outcomes.analysis.survival import reasons
+from outcomes.analysis.survival import lost_track, reasons
 from outcomes.errors import InputRefused
 
 __all__ = ["compare_incidence", "cumulative_incidence"]
@@ -135,8 +134,8 @@ class _Curves:
         self.gone = increments(self.at, everyone.time, everyone.censored)
         self.none_yet = step_at(self.at, self.c.time, self.s, 1.0)
         self.reason = reasons(self.at, self.none_yet, self.n_at, rows)
-        unseen = (self.at > rows.time.max()) | (self.at > empties_at(rows))
-        self.hidden = unseen & (self.none_yet > 0)
+        self.hidden = (self.at > rows.time.max()) & (self.none_yet > 0)
+        self.hidden |= lost_track(self.at, rows, self.c.time, self.s)
         self.binomial_n = self._binomial_n(everyone.time, everyone.censored)
 
     def _errors(self, variance: str) -> Floats:

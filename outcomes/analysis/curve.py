@@ -187,7 +187,8 @@ def area_to(rows: Sample, tau: float) -> Area:
     events = float(d.sum())
     if not ended and tau > rows.time.max():
         return Area(events=events, n=rows.size, reason="beyond_follow_up")
-    if not ended and tau > empties_at(rows):
+    gap = empties_at(rows)
+    if tau > gap and not (s[at <= gap] <= 0).any():
         return Area(events=events, n=rows.size, reason="empty_risk_set")
     pieces = np.diff(np.concatenate([[0.0], at, [tau]])) * np.concatenate([[1.0], s])
     rest = np.cumsum(pieces[::-1])[::-1][1:]

@@ -123,6 +123,7 @@ def _curve(label: str, rows: Sample, begin: float, asked: Floats, scale: str, le
     low, high = np.where(sure, all_lower(n_at, level), low), np.where(sure & (n_at >= 1), 1.0, high)
     reason = reasons(at, s, n_at, rows)
     hidden = (reason == "beyond_follow_up") | ((reason == "empty_risk_set") & (s > 0) & (at > begin))
+    hidden |= lost_track(at, rows, c.time, steps)
     error = np.where(s > 0, s * np.sqrt(g), np.nan)
     values = {"estimate": s, "std_error": error, "lower": low, "upper": high}
     shown = {name: np.where(hidden, np.nan, v) for name, v in values.items()}
@@ -141,6 +142,15 @@ def reasons(at: Floats, s: Floats, n_at: Floats, rows: Sample) -> Any:
     out[at > gap] = "empty_risk_set"
     out[(at > last) & (s > 0)] = "beyond_follow_up"
     return out
+
+
+def lost_track(at: Floats, rows: Sample, time: Floats, steps: Floats) -> Any:
+    """Whether t lies after a time at which nobody was watched although the curve had not reached 0 by then.
+
+    What happens to those who enter later says nothing of the time between, even if all have the event.
+    """
+    gap = empties_at(rows)
+    return (at > gap) & (step_at(np.array([gap]), time, steps, 1.0)[0] > 0)
 
 
 def person_spread(rows: Sample, c: RiskSet, at: Floats) -> Floats:
