@@ -10,8 +10,8 @@ from typing import Any
 
 from outcomes.errors import UsageError
 from outcomes.intake.mapping import File, Mapping, Sheet, Source
-from outcomes.intake.mapping_sheet import read_sheet
 from outcomes.intake.mapping_problem import Problems, Table
+from outcomes.intake.mapping_sheet import read_sheet
 from outcomes.intake.mapping_source import read_source
 
 UNSETTLED = "?"

@@ -4,7 +4,8 @@ from __future__ import annotations
 
 import datetime as dt
 import unicodedata
-from collections.abc import Callable, Iterable, Mapping as Lookup
+from collections.abc import Callable, Iterable
+from collections.abc import Mapping as Lookup
 from dataclasses import dataclass, field
 from typing import BinaryIO
 

@@ -6,6 +6,7 @@ from dataclasses import dataclass
 from functools import cache
 
 import duckdb
+import pyarrow as pa
 
 from outcomes.resources import sql_files
 
@@ -45,8 +46,19 @@ class Vocabulary:
 def load_vocabulary(con: duckdb.DuckDBPyConnection) -> None:
     """Create schema `vocabulary` with one table a list."""
     con.execute("create schema if not exists vocabulary")
-    for stem, text in sql_files("vocabulary"):
-        con.execute(f'create or replace table vocabulary."{stem}" as {text}')
+    for stem, rows in _lists().items():
+        con.register("arrow_in", rows)
+        con.execute(f'create or replace table vocabulary."{stem}" as select * from arrow_in')
+        con.unregister("arrow_in")
+
+
+@cache
+def _lists() -> dict[str, pa.Table]:
+    """Every list as rows: the files are read and parsed once a process, however many connections want them."""
+    con = duckdb.connect(":memory:")
+    lists = {stem: con.sql(text).to_arrow_table() for stem, text in sql_files("vocabulary")}
+    con.close()
+    return lists
 
 
 @cache

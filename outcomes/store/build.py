@@ -14,8 +14,10 @@ from outcomes.store.schema import NUMBERED, NUMBERED_WITHIN
 
 def fill_store(con: duckdb.DuckDBPyConnection, mapping: Mapping, *, old: bool) -> None:
     """Fill the attached database `new` from the candidates and, where there is one, the store `old`."""
+    given = {t for (t,) in con.execute("select distinct table_name from work.change").fetchall()}
     for table in merged_tables():
-        _fill_table(con, table, old)
+        if old or table in given:
+            _fill_table(con, table, old)
     _fill_person(con, old)
     _fill_set_aside(con, mapping, old)
     _fill_attempts(con, mapping, old)
@@ -52,15 +54,23 @@ def _content_order(table: str) -> str:
 
 
 def _fill_person(con: duckdb.DuckDBPyConnection, old: bool) -> None:
-    """What the first run of a person says of her stands before what is stored, and that before what later runs say."""
-    stored = "select person_key, sex_recorded, height_cm, order_is_uncertain, 1 as age, 1 as uncertain_age from old.record.person" if old else None
-    given = """select person_key, sex_recorded, height_cm, order_is_uncertain, case when decides then 0 else 2 end as age, 0 as uncertain_age
+    """What the first run of a person says of her stands before what is stored, and that before what later runs say.
+
+    Whether the order of her runs is known is asked anew when a run is added; otherwise it can only become known, so that
+    a later batch without the calendar file takes nothing away.
+    """
+    known = "select run_key from old.record.support_run union all select run_key from old.record.set_aside_run"
+    adds = f"run_key not in ({known})" if old else "true"
+    rows = f"""select person_key, sex_recorded, height_cm, order_is_uncertain, case when decides then 0 else 2 end as age,
+          person_key in (select person_key from work.run_order where {adds}) as adds_run
         from candidate.person where run_key is not null"""
-    rows = f"{given} union all {stored}" if stored else given
+    if old:
+        rows += " union all select person_key, sex_recorded, height_cm, order_is_uncertain, 1, false from old.record.person"
     con.execute(
         f"""insert into new.record.person by name
         select person_key, arg_min(sex_recorded, age) as sex_recorded, arg_min(height_cm, age) as height_cm,
-          arg_min(order_is_uncertain, uncertain_age) as order_is_uncertain
+          case when bool_or(adds_run) then bool_or(order_is_uncertain) filter (where age <> 1)
+               else bool_and(order_is_uncertain) end as order_is_uncertain
         from ({rows}) where person_key in (select person_key from new.record.support_run)
         group by person_key order by person_key"""
     )

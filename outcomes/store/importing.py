@@ -14,7 +14,6 @@ import duckdb
 
 from outcomes.errors import DataRefused, UsageError
 from outcomes.findings import Finding, in_order
-from outcomes.intake.identify import Identities
 from outcomes.intake.mapping import Mapping
 from outcomes.intake.take_in import Intake, Opener, take_in
 from outcomes.intake.unit_evidence import require_units
@@ -23,7 +22,13 @@ from outcomes.store.build import fill_ledger, fill_store
 from outcomes.store.checks import refresh_set_aside, run_checks
 from outcomes.store.connect import SCHEMA_VERSION, connect, harden, open_for_reading, translate
 from outcomes.store.ledger import verify, write_states
-from outcomes.store.linkfile import CalendarEntry, calendar_bytes, identities_bytes, read_calendar, read_identities
+from outcomes.store.linkfile import (
+    CalendarEntry,
+    calendar_bytes,
+    identities_bytes,
+    read_calendar,
+    read_identities,
+)
 from outcomes.store.merge import Merge, compare, note_carried_before
 from outcomes.store.recover import Places, put_all_in_place, recover
 from outcomes.store.run_order import run_order

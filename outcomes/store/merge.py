@@ -46,8 +46,10 @@ def compare(con: duckdb.DuckDBPyConnection, mapping: Mapping, *, old: bool, repl
     """
     con.execute("create or replace table work.change (run_key varchar, table_name varchar, state varchar, earlier_hash varchar)")
     _carried(con, mapping)
+    spoken = {t for (t,) in con.execute("select distinct table_name from work.carried").fetchall()}
     for table in merged_tables():
-        _compare_table(con, table, old)
+        if table in spoken:
+            _compare_table(con, table, old)
     beside = 0
     if old:
         _compare_persons(con)

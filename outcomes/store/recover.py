@@ -7,7 +7,17 @@ from pathlib import Path
 
 from outcomes.errors import StoreProblem
 from outcomes.store.connect import connect, open_for_reading
-from outcomes.store.files import BEFORE, beside, drop_before, fsync_folder, put_in_place, require_private, sha256_of, sweep, write_private
+from outcomes.store.files import (
+    BEFORE,
+    beside,
+    drop_before,
+    fsync_folder,
+    put_in_place,
+    require_private,
+    sha256_of,
+    sweep,
+    write_private,
+)
 from outcomes.store.ledger import batch_number, verify
 from outcomes.store.linkfile import CALENDAR, LINK, require_unchanged
 

@@ -40,20 +40,22 @@ def run_order(
 
     stored: run key -> person key of runs in the store (set-aside ones included); starts: run key -> start in UTC from the
     calendar file. con is the staging connection: starts never leave it. Where one run of a person has no start, the
-    order of all of them is uncertain: nth_run and hours_from_first_run say nothing.
+    order of all of them is uncertain: nth_run and hours_from_first_run say nothing. Attempts and runs that only a sheet without
+    starts names are no runs of anybody, unless the store knows them.
     """
     numbers = intake.numbers
-    attempts = {
+    unnamed = {
         n for (n,) in con.execute(
-            "select run_no from staging.row join staging.sheet using (sheet_no) group by run_no having bool_and(row_is = 'attempt')"
+            """select run_no from staging.row group by run_no
+            having bool_and(sheet_no not in (select sheet_no from staging.piece where target_column = 'start'))"""
         ).fetchall()
     }  # fmt: skip
-    wanted = [i for i in range(len(numbers.run_keys)) if i not in attempts]
+    wanted = [i for i in range(len(numbers.run_keys)) if i not in unnamed or numbers.run_keys[i] in stored]
     found = dict(con.execute("select run_no, start_utc from staging.run_start").fetchall())
     new = {
         "run_key": pa.array([numbers.run_keys[i] for i in wanted], pa.string()),
         "person_key": pa.array([numbers.person_keys[i] for i in wanted], pa.string()),
-        "start_utc": pa.array([found.get(i) for i in wanted], pa.timestamp("us")),
+        "start_utc": pa.array([found.get(i, starts.get(numbers.run_keys[i])) for i in wanted], pa.timestamp("us")),
     }
     old = {
         "run_key": pa.array(list(stored), pa.string()),

@@ -176,7 +176,7 @@ class Desk:
         known = {self.store.name, self.link.name, self.calendar.name, f".{self.store.name}.lock"}
         return sorted(
             p.name for p in self.folder.iterdir()
-            if p.name.startswith(".") and p.name not in known or p.name.endswith((".before", ".wal", ".new", ".tmp"))
+            if (p.name.startswith(".") and p.name not in known) or p.name.endswith((".before", ".wal", ".new", ".tmp"))
         )  # fmt: skip
 
     def modes(self) -> dict[str, int]:

@@ -64,7 +64,7 @@ def test_date_and_time_columns_join_and_a_duration_stands_for_an_end(desk: Desk)
 
 def test_a_unit_that_the_values_contradict_stops_the_import_with_its_evidence(desk: Desk) -> None:
     rows = [f"{i},A{i},1960-05-01,M,80,2021-03-01 10:00,2021-03-05 10:00,Recovered,yes,{35 + i % 9}," for i in range(1, 26)]
-    code, out, err = desk.bring(Mapped(), rows, options=("--set-aside",))
+    code, _, err = desk.bring(Mapped(), rows, options=("--set-aside",))
     assert code == 3 and "UNIT.CONTRADICTED" in err and "mg/dL" in err and "25 values" in err
     assert "Lactate" in err and desk.state() == {}
 

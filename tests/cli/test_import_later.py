@@ -40,6 +40,9 @@ def test_without_the_calendar_file_late_follow_up_finds_no_start(stocked: Desk) 
     stocked.calendar.unlink()
     code, out, _ = stocked.bring(late_mapping(), LATE)
     assert code == 3 and out.count("KEY.UNKNOWN-RUN") == 2
+    code, out, err = stocked.bring(Mapped(source=SOURCE | {"extent": '"addition"'}), [ROWS[0].replace(",4.5,", ",4.6,")], options=("--replace",))
+    assert code == 0, out + err
+    assert stocked.ask("select count(*) from record.person where order_is_uncertain") == [(0,)]
 
 
 def test_a_second_run_a_year_later_is_the_second_by_the_calendar_file(stocked: Desk) -> None:

@@ -177,8 +177,6 @@ def test_files_on_another_disk(stocked: Desk, tmp_path: Path) -> None:
 
 def test_another_writer_makes_the_import_wait_and_then_give_up(stocked: Desk, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("outcomes.store.files.time.sleep", lambda seconds: None)
-    import fcntl
-
     handle = os.open(stocked.folder / ".unit.duckdb.lock", os.O_RDWR | os.O_CREAT)
     try:
         fcntl.flock(handle, fcntl.LOCK_EX)

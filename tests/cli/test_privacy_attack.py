@@ -76,7 +76,7 @@ def _no_start_from_a_shared_date(desk: Desk, known: dict[str, dt.datetime]) -> N
 
 def _by_chance(day: dt.datetime, start: dt.datetime, hours: float) -> bool:
     """A run that begins in the days around the period's limit lies near it with any small number of hours."""
-    return abs(day - start) < dt.timedelta(days=14) and hours < 14 * 24 or hours in (0.0, 720.0, 2160.0, 4320.0, 8760.0)
+    return (abs(day - start) < dt.timedelta(days=14) and hours < 14 * 24) or hours in (0.0, 720.0, 2160.0, 4320.0, 8760.0)
 
 
 def _no_order_of_arrival(desk: Desk, known: dict[str, dt.datetime]) -> None:
