@@ -150,15 +150,16 @@ class _Curves:
         return out
 
     def _binomial_n(self, time: Floats, censored: Floats) -> Floats:
-        """Everyone, if nobody was censored before t or entered late; else those at risk at t, or when the
-        last of them had an ending."""
+        """Everyone watched beyond 0, if nobody was censored before t or entered late; else those at risk at
+        t, or when the last of them had an ending."""
         ended = self.c.time[self.s <= 0]
         n = at_risk(np.minimum(self.at, ended[0]) if len(ended) else self.at, self.rows)
         if self.rows.is_late:
             return n
+        unseen = float(censored[time == 0].sum())
         total = np.concatenate([[0.0], np.cumsum(censored)])
         before = total[np.searchsorted(time, self.at, side="left")]
-        return np.where(before == 0, self.rows.size, n)
+        return np.where(before <= unseen, (self.rows.size - unseen) or self.rows.size, n)
 
     def cause(self, label: str, name: str, k: int, interval: str, level: float) -> pd.DataFrame:
         f = step_at(self.at, self.c.time, self.f[:, k], 0.0)
