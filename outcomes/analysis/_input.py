@@ -22,9 +22,7 @@ Members = list[tuple[str, npt.NDArray[np.bool_]]]
 
 def floats(values: Any, name: str) -> Floats:
     """A one-dimensional float array without NaN or infinity; text is refused even if it spells a number."""
-    if isinstance(values, pd.Series) and pd.api.types.is_extension_array_dtype(values.dtype):
-        values = values.to_numpy(dtype=object, na_value=None)
-    array = _as_floats(values, name)
+    array = floats_or_missing(values, name)
     if array.ndim != 1:
         raise InputRefused("shape", f"{name} must be one-dimensional")
     if not np.isfinite(array).all():
@@ -32,7 +30,10 @@ def floats(values: Any, name: str) -> Floats:
     return array
 
 
-def _as_floats(values: Any, name: str) -> Floats:
+def floats_or_missing(values: Any, name: str) -> Floats:
+    """A float array of any shape in which None and NA became NaN; text is refused."""
+    if isinstance(values, pd.Series) and pd.api.types.is_extension_array_dtype(values.dtype):
+        values = values.to_numpy(dtype=object, na_value=None)
     try:
         raw = np.asarray(values)
     except (TypeError, ValueError):
@@ -117,7 +118,7 @@ def predictions(values: Any, n: int | None = None, name: str = "prediction") -> 
 
 def number(value: Any, name: str, *, above: float = -math.inf, least: float = -math.inf) -> float:
     """One finite number > above and >= least."""
-    array = _as_floats(value, name)
+    array = floats_or_missing(value, name)
     if array.ndim != 0:
         raise InputRefused("shape", f"{name} must be one number")
     found = float(array)
@@ -136,7 +137,7 @@ def probability(value: Any, name: str = "level") -> float:
 
 def whole_count(value: Any, name: str) -> int:
     """One whole number, not negative."""
-    array = _as_floats(value, name)
+    array = floats_or_missing(value, name)
     if array.ndim != 0 or not np.isfinite(array) or array < 0 or array != np.floor(array):
         raise InputRefused("count", f"{name} must be one whole number, not negative")
     return int(array)
@@ -219,7 +220,7 @@ def groups(values: Any, n: int, known_at: Any = None) -> Members:
 
 
 def _known_at_start(known_at: Any) -> bool:
-    return bool((_as_floats(np.atleast_1d(np.asarray(known_at, dtype=object)), "known_at") <= 0).all())
+    return bool((floats_or_missing(np.atleast_1d(np.asarray(known_at, dtype=object)), "known_at") <= 0).all())
 
 
 def cluster_codes(values: Any, n: int) -> Codes | None:
