@@ -225,6 +225,7 @@ class _Job:
         new = self.folder / "new.duckdb"
         self.con.execute("attach '" + str(new).replace("'", "''") + "' as new (block_size 16384)")
         harden(self.con)
+        self.con.execute("begin")
         create_store(self.con, "new")
         self.con.execute("use bench")
         fill_store(self.con, self.request.mapping, old=bool(self.old_batch))
@@ -232,6 +233,7 @@ class _Job:
         values = self._batch_values(counts, merge, link, calendar)
         fill_ledger(self.con, values, hashes, findings, self.request.mapping, old=bool(self.old_batch))
         write_states(self.con, self.batch, SCHEMA_VERSION, "new")
+        self.con.execute("commit")
         self.con.execute("checkpoint new")
         self.con.execute("detach new")
         os.chmod(new, 0o600)
