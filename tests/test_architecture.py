@@ -55,7 +55,7 @@ NO_CLOCK_BELOW = ("intake", "cohort", "criteria", "scores", "analysis", "study",
 MODULES = sorted(p for p in PACKAGE.rglob("*.py") if "_shipped" not in p.parts)
 SOURCES = [*MODULES, *sorted(SYNTHETIC.rglob("*.py"))]
 MAX_LINES = 300
-MAX_BODY = 50
+MAX_BODY = 45
 
 
 def layer(path: Path) -> str:
@@ -140,7 +140,8 @@ def test_a_file_has_one_subject_and_its_functions_are_short(path: Path) -> None:
     assert text.count("\n") < MAX_LINES
     for node in ast.walk(ast.parse(text)):
         if isinstance(node, (ast.FunctionDef, ast.AsyncFunctionDef)):
-            length = (node.end_lineno or 0) - node.body[0].lineno + 1
+            body = node.body[1:] if ast.get_docstring(node) else node.body
+            length = (node.end_lineno or 0) - body[0].lineno + 1 if body else 0
             assert length <= MAX_BODY, f"{node.name}: {length} lines"
 
 
