@@ -8,6 +8,7 @@ from scipy.stats import chi2, norm
 from outcomes.analysis._input import Floats, one_of
 
 SURVIVAL_SCALES = ("log-log", "log", "plain", "arcsine")
+TOO_WIDE = 300.0
 INCIDENCE_SCALES = {"cloglog": "log(−log(1−F))", "loglog": "log(−log F)", "plain": "plain"}
 
 
@@ -72,6 +73,19 @@ def logit_limits(p: Floats, se: Floats, level: float) -> tuple[Floats, Floats]:
     with np.errstate(over="ignore"):
         low, high = 1 / (1 + np.exp(half - centre)), 1 / (1 + np.exp(-half - centre))
     return np.where(inside, low, np.nan), np.where(inside, high, np.nan)
+
+
+def log_limits(value: float, error: float, level: float) -> dict[str, object]:
+    """Cells lower and upper of value·exp(±z error); an upper limit beyond any number is not_reached.
+
+    >>> {k: round(float(v), 4) for k, v in log_limits(2.0, 0.5, 0.95).items()}
+    {'lower': 0.7506, 'upper': 5.3288}
+    """
+    half = z_of(level) * error
+    if half > TOO_WIDE:
+        return {"lower": 0.0, "upper": None, "reason": "not_reached"}
+    factor = float(np.exp(half))
+    return {"lower": value / factor, "upper": value * factor}
 
 
 def all_lower(n: Floats, level: float) -> Floats:

@@ -23,7 +23,7 @@ from outcomes.analysis._input import (
     whole_count,
 )
 from outcomes.analysis._person import FEW_PERSONS, few_repeats, person_variance, persons, too_few
-from outcomes.analysis.intervals import garwood, z_of
+from outcomes.analysis.intervals import garwood, log_limits, z_of
 from outcomes.analysis.result import Caution, Method, Result, tidy
 from outcomes.errors import InputRefused, NotEstimable
 
@@ -71,13 +71,15 @@ def incidence_rate(events: Any, exposure: Any, *, per: float = 1.0, variance: st
         raise InputRefused("variance", f"{variance} limits need one value for each run")
     kind, notes = _choose(runs, variance)
     low, high = garwood(int(runs.total), level)
-    numbers: dict[str, float] = {
+    reason: dict[str, object] = {}
+    numbers: dict[str, Any] = {
         "estimate": runs.rate, "lower_poisson": low / runs.time, "upper_poisson": high / runs.time,
     }  # fmt: skip
     if kind in SPREAD:
         error = runs.log_error(kind)
-        factor = float(np.exp(z_of(level) * error))
-        numbers |= {"std_error": runs.rate * error, "lower": runs.rate / factor, "upper": runs.rate * factor}
+        found = log_limits(runs.rate, error, level)
+        numbers |= {"std_error": runs.rate * error, "lower": found["lower"], "upper": found["upper"]}
+        reason = {"reason": found.get("reason")}
         words, source = SPREAD[kind]
         name = (
             "quasi-Poisson" if kind == "quasi" else "robust by " + ("run" if runs.who is None else "person")
@@ -87,7 +89,7 @@ def incidence_rate(events: Any, exposure: Any, *, per: float = 1.0, variance: st
         numbers |= {"lower": low / runs.time, "upper": high / runs.time}
         numbers |= {"std_error": float(np.sqrt(runs.total)) / runs.time} if runs.total else {}
         (words, source), name = INTERVALS[kind], "Poisson"
-    shown = {key: value * scale for key, value in numbers.items()}
+    shown = {key: None if value is None else value * scale for key, value in numbers.items()} | reason
     method = Method("events / exposure", name, words, level, "", time_unit, (source,))
     return Result(
         tidy([shown | runs.described()], COLUMNS), method, runs.counted(), (*notes, *few_repeats(runs.who))

@@ -20,7 +20,7 @@ from outcomes.analysis._input import (
     whole_count,
 )
 from outcomes.analysis._person import FEW_PERSONS, few_repeats, persons, too_few
-from outcomes.analysis.intervals import z_of
+from outcomes.analysis.intervals import log_limits, z_of
 from outcomes.analysis.rate import DISPERSED, INTERVALS, MANY_RUNS, SPREAD, Runs, count_limits
 from outcomes.analysis.result import Caution, Method, Result, tidy
 from outcomes.errors import NotEstimable
@@ -72,8 +72,7 @@ def rate_ratio(events: Any, exposure: Any, events_reference: Any, exposure_refer
             row["std_error"] = float(np.sqrt(1 / pair.one.total + 1 / pair.ref.total))
     if kind in SPREAD:
         error = pair.log_error(kind)
-        ratio, factor = pair.one.rate / pair.ref.rate, float(np.exp(z_of(level) * error))
-        row |= {"std_error": error, "lower": ratio / factor, "upper": ratio * factor}
+        row |= {"std_error": error} | log_limits(pair.one.rate / pair.ref.rate, error, level)
         words, source = SPREAD[kind]
         name = "quasi-Poisson" if kind == "quasi" else "robust by " + ("run" if cluster is None else "person")
     else:
@@ -193,8 +192,7 @@ def standardised_ratio(observed: Any, expected: Any, *, variance_expected: Any =
     (words, source), name = INTERVALS[interval], "Poisson in O"
     if variance_expected is not None and x > 0:
         spread = number(variance_expected, "variance_expected", least=0.0)
-        factor = float(np.exp(z_of(level) * np.sqrt(1 / x + spread / e**2)))
-        row |= {"lower": x / e / factor, "upper": x / e * factor}
+        row |= log_limits(x / e, float(np.sqrt(1 / x + spread / e**2)), level)
         words, name = "log", "Poisson in O, variance of E added"
     else:
         low, high = count_limits(x, interval, level)
