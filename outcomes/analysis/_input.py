@@ -225,9 +225,12 @@ def _known_at_start(known_at: Any) -> bool:
 
 def cluster_codes(values: Any, n: int) -> Codes | None:
     """0 … persons−1 for every row, in order of label; None without a cluster."""
-    if values is None:
-        return None
-    _, codes = np.unique(labels(values, n, "cluster").astype(str), return_inverse=True)
+    return None if values is None else numbered(values, n, "cluster")
+
+
+def numbered(values: Any, n: int, name: str) -> Codes:
+    """0, 1, … for every row, in order of its label as text."""
+    _, codes = np.unique(labels(values, n, name).astype(str), return_inverse=True)
     return np.asarray(codes, dtype=np.int64)
 
 

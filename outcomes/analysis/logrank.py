@@ -15,8 +15,8 @@ from outcomes.analysis._input import (
     binary,
     floats,
     groups,
-    labels,
     number,
+    numbered,
     same_length,
     whole_count,
 )
@@ -73,7 +73,7 @@ def logrank(time: Any, event: Any, group: Any, *, entry: Any = None, weights: An
     named = [(g, inside) for g, inside in named if inside.any()]
     if len(named) < 2:
         raise NotEstimable("one_group", "there is only one group with runs")
-    layer = np.zeros(n, dtype=np.int64) if strata is None else _numbered(strata, n)
+    layer = np.zeros(n, dtype=np.int64) if strata is None else numbered(strata, n, "strata")
     keep = rows.weight > 0
     rows, which = rows.pick(keep), np.argmax(np.array([m for _, m in named]), axis=0)[keep]
     layer = layer[keep]
@@ -107,11 +107,6 @@ def _name(rho: float, contrast: Floats | None, strata: Any) -> str:
     words = "Mantel log-rank" if rho == 0 else f"log-rank with weight S^{rho:g}"
     words += "" if contrast is None else ", trend over the groups"
     return words if strata is None else words + ", stratified"
-
-
-def _numbered(strata: Any, n: int) -> Codes:
-    _, codes = np.unique(labels(strata, n, "strata").astype(str), return_inverse=True)
-    return np.asarray(codes, dtype=np.int64)
 
 
 def _contrast(scores: Sequence[float], g: int) -> Floats:
