@@ -21,6 +21,7 @@ from outcomes.intake.mapping_file import read_mapping
 from outcomes.store.recover import Places
 
 LISTED = 1000
+FEW = 5
 SAFE_NAME = re.compile(r"[A-Za-z0-9][A-Za-z0-9._-]{0,63}")
 
 
@@ -84,15 +85,13 @@ def print_findings(findings: Iterable[Finding], stream: io.TextIOBase | None = N
         print("  " + finding.text(), file=out)
     if len(refusals) > LISTED:
         print(f"  and {len(refusals) - LISTED} more", file=out)
-    notes: dict[tuple[str, str, str, str, str], int] = {}
+    notes: dict[tuple[str, str, str, str, str], list[int]] = {}
     for f in findings:
         if f.effect == "note":
-            key = (f.code, f.source, f.sheet, f.column, f.rule)
-            notes[key] = notes.get(key, 0) + 1
-    for (code, source, sheet, column, rule), n in sorted(notes.items()):
-        print(
-            f"  {code} (note) {source}/{sheet}{', ' + column if column else ''}: {rule} ({n} rows)", file=out
-        )
+            notes.setdefault((f.code, f.source, f.sheet, f.column, f.rule), []).append(f.line)
+    for (code, source, sheet, column, rule), lines in sorted(notes.items()):
+        where = f"line {', '.join(map(str, lines))}" if len(lines) <= FEW else f"{len(lines)} rows"
+        print(f"  {code} (note) {source}/{sheet}{', ' + column if column else ''}: {rule} ({where})", file=out)
 
 
 def findings_csv(findings: Iterable[Finding]) -> str:

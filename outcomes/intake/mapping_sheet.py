@@ -25,6 +25,7 @@ def read_sheet(table: Table, defaults: dict[str, Any], source: Source) -> Sheet:
     if row_is == "code list":
         return _read_code_list(table)
     blanks = _read_blanks(table)
+    defaults = {**defaults, "window": table.text("window", "")}
     columns = tuple(_read_column(t, defaults, blanks) for t in table.tables("column"))
     sheet = Sheet(
         key=table.pattern("key", _KEY),
@@ -89,7 +90,7 @@ def _read_column(table: Table, defaults: dict[str, Any], blanks: dict[str, str])
             table.problem("blank", "what an empty cell means is not said: " + ", ".join(BLANKS))
     column = Column(
         header=header,
-        pieces=_read_pieces(table),
+        pieces=_read_pieces(table, defaults["window"]),
         blank=blank,
         split=table.text("split", ""),
         join=table.texts("join", ()),
@@ -106,10 +107,10 @@ def _read_column(table: Table, defaults: dict[str, Any], blanks: dict[str, str])
     return column
 
 
-def _read_pieces(table: Table) -> tuple[Piece, ...]:
+def _read_pieces(table: Table, usual_window: str) -> tuple[Piece, ...]:
     names = table.texts("fields") if table.has("fields") else (table.text("field"),)
     table.asked.update(("field", "fields"))
-    window, site, reading = table.text("window", ""), table.text("site", ""), table.text("reading", "")
+    window, site, reading = table.text("window", usual_window), table.text("site", ""), table.text("reading", "")
     unit = table.text("unit", "")
     words = vocabulary()
     pieces = []

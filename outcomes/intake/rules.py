@@ -15,6 +15,7 @@ RULES = {
     "CELL.MERGED": "the cell is merged with another one",
     "CELL.LIMIT": "the value lies outside what is possible in the declared unit",
     "CELL.TIME": "the time lies before the start of support, or impossibly far from it",
+    "CELL.TOKEN": "a word that the mapping declares as not recorded",
     "CELL.UNUSUAL": "the value is unusual, but possible; kept",
     "CELL.BIRTH": "the birth lies after the start of support, or more than 130 years before it",
     "CELL.TIME-SKIPPED": "this local time does not exist: the clocks went forward",

@@ -1,7 +1,7 @@
 -- Grain: one row a defect of a cell. The value itself is not here: only its length and shape (letters a, digits 9).
 select
   v.sheet_no, v.line, v.run_no, v.piece_no, p.header, v.field,
-  coalesce(v.defect, v.clock, 'CELL.UNUSUAL') as code,
+  coalesce(v.defect, v.clock, case when m.token is not null then 'CELL.TOKEN' end, 'CELL.UNUSUAL') as code,
   case
     when v.defect is null then 'note'
     when p.effect = 'run' and p.row_is <> 'run' then 'row'
@@ -21,6 +21,8 @@ select
 from staging.value v
 join staging.piece p using (piece_no)
 left join vocabulary.analyte a on v.target_table = 'measurement' and a.analyte = v.target_column
+left join staging.missing_token m on m.piece_no = v.piece_no and m.token = v.word and v.missing_word is not null
 where v.defect is not null
    or v.clock = 'CELL.TIME-REPEATED'
+   or m.token is not null
    or (v.amount is not null and (v.amount < a.plausible_low or v.amount > a.plausible_high))
