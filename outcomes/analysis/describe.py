@@ -18,11 +18,12 @@ from outcomes.errors import InputRefused
 __all__ = ["baseline", "missing_patterns", "missingness", "standardised_difference"]
 
 COLUMNS = (
-    "group", "variable", "value", "kind", "median", "q25", "q75", "mean", "std_dev", "count", "share", "known",
-    "n", "reason",
+    "group", "variable", "value", "kind", "median", "q25", "q75", "mean", "std_dev", "count", "share",
+    "known", "n", "reason",
 )  # fmt: skip
 MISSING_COLUMNS = (
-    "group", "variable", "present", "missing", "not_applicable", "withheld", "eligible", "share", "n", "reason",
+    "group", "variable", "present", "missing", "not_applicable", "withheld", "eligible", "share", "n",
+    "reason",
 )  # fmt: skip
 ABSENT = ("missing", "not_applicable", "withheld")
 SOME, MANY = 0.10, 0.40

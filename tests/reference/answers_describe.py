@@ -16,7 +16,8 @@ def continuous(case: Case) -> dict[str, Any]:
         frame[case.inputs["x"]].astype(float), frame["arrest"], kind="continuous"
     ).table.iloc[0]
     return {
-        "mean1": row["mean"], "mean0": row["mean_reference"], "sd1": row["std_dev"], "sd0": row["std_dev_reference"],
+        "mean1": row["mean"], "mean0": row["mean_reference"],
+        "sd1": row["std_dev"], "sd0": row["std_dev_reference"],
         "smd": row["estimate"], "se": row["std_error"], "lower": row["lower"], "upper": row["upper"],
         "variance_ratio": row["variance_ratio"],
     }  # fmt: skip
