@@ -51,6 +51,7 @@ class RunNumbers:
 
     identities: Identities
     space: str
+    run_space: str = ""
     number_of: dict[str, int] = field(default_factory=dict)
     run_keys: list[str] = field(default_factory=list)
     person_keys: list[str | None] = field(default_factory=list)
@@ -66,7 +67,7 @@ class RunNumbers:
         if found is None:
             found = len(self.run_keys)
             self.number_of[run] = found
-            self.run_keys.append(self.identities.run(self.space, run))
+            self.run_keys.append(self.identities.run(self.run_space or self.space, run))
             self.person_keys.append(None)
         if person is not None:
             key = self.identities.person(self.space, person)

@@ -54,7 +54,7 @@ def take_in(
     """
     lists = _read_lists(mapping, openers)
     staging = Staging(mapping, lists)
-    numbers = RunNumbers(identities, mapping.source.identifiers)
+    numbers = RunNumbers(identities, mapping.source.identifiers, mapping.source.key)
     intake = Intake(mapping, staging, numbers)
     given: set[int] = set()
     for file, sheet_no, sheet in _in_order(mapping):

@@ -8,6 +8,7 @@ select
   i.indication_group, s.had_arrest, coalesce(s.extracorporeal_cpr, false) as is_extracorporeal_cpr,
   r.intended_pathway, r.plan_is_from_start,
   coalesce(r.transferred_in, r.entry_h > 0, false) as is_transferred_in,
+  coalesce(r.transferred_in, false) and r.entry_h is null as has_unknown_entry,
   coalesce(r.entry_h, 0.0) as entry_h,
   c.arterial_return, c.leg_cannula, c.right_sided_monitoring,
   e.end_kind, k.pathway, k.cause, e.end_h, e.open_days,

@@ -39,7 +39,7 @@ with known as (
 )
 select
   run_key, person_key, source_key, is_first_run, run_year, is_extracorporeal_cpr, intended_pathway, plan_is_from_start,
-  pathway, end_kind, entry_h, is_transferred_in, died,
+  pathway, end_kind, entry_h, has_unknown_entry, is_transferred_in, died,
   case when died then death_h else greatest(last_alive_h, registered_alive_h) end as time_h,
   case when died and is_news then least(last_alive_h, death_h) when died then death_h
        else greatest(last_alive_h, registered_alive_h) end as time_low_h,

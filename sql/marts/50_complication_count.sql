@@ -4,7 +4,7 @@
 with carried as (
   select
     m.run_key, m.person_key, m.source_key, m.run_year, m.pathway, m.end_kind, m.arterial_return, m.right_sided_monitoring,
-    m.support_h, m.entry_h, k.kind, k.label, k.family, k.window_h, k.from_h, k.at_risk,
+    m.support_h, m.entry_h, m.has_unknown_entry, k.kind, k.label, k.family, k.window_h, k.from_h, k.at_risk,
     c.events_kept, c.looked_until_h,
     s.on_rrt_at_zero, h.dialysis_dependent, x.missing_kind
   from mart.run m
@@ -31,6 +31,8 @@ with carried as (
   select *,
     case
       when missing_kind in ('not_recorded', 'set_aside') then 'not recorded'
+      when missing_kind = 'not_applicable' then 'does not apply'
+      when has_unknown_entry then 'transferred in at an unknown time'
       when n_before > 0 then 'present before support'
       when at_risk = 'femoral' and arterial_return is null then 'return site not recorded'
       when at_risk = 'femoral' and arterial_return <> 'femoral' then 'other return site'

@@ -29,7 +29,7 @@ OLE2 = b"\xd0\xcf\x11\xe0\xa1\xb1\x1a\xe1" + b"\x00" * 600
     [
         (_zip(), "zip"),
         (b"%PDF-1.7\n", "pdf"),
-        (gzip.compress(b"a,b\n"), "gzip"),
+        (gzip.compress(b"a,b\n", mtime=0), "gzip"),
         (b"BZh91AY&SY\x00", "bzip2"),
         (OLE2, "ole2"),
         (OLE2 + "EncryptedPackage".encode("utf-16-le"), "encrypted"),

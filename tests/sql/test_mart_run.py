@@ -17,6 +17,7 @@ h       | 20    | transfer_out    |
 i       |       | open            | 3
 j       |       | open            | 0
 k       | 24    | recovery        |
+l       | 90    | recovery        |
 """
 RUNS = """
 run_key | transferred_in | entry_h
@@ -27,10 +28,11 @@ d       |                |
 e       |                |
 f       |                |
 g       |                |
-h       | true           |
+h       | true           | 2
 i       |                |
 j       |                |
 k       |                | 24
+l       | true           |
 """
 
 
