@@ -119,6 +119,12 @@ def _cannot_tell(audit: Audit) -> tuple[list[dict[str, object]], tuple[Caution, 
             "observed from arrival on, if that time is known",
         ),
         _line(
+            "unknown_entry",
+            "transferred in at an unknown time",
+            run[run["has_unknown_entry"].fillna(False).astype(bool)],
+            "in no curve and no rate: how long they had to survive is unknown",
+        ),
+        _line(
             "transferred_out",
             "transferred out on support",
             run[run["end_kind"] == "transfer_out"],

@@ -37,6 +37,9 @@ def survival(audit: Audit, days: list[float]) -> Answer:
     people = first_runs(audit.current)
     if people.empty:
         raise NotEstimable("no_runs", "No first run is in this period.")
+    people = people[~people["has_unknown_entry"].fillna(False).astype(bool)].reset_index(drop=True)
+    if people.empty:
+        raise NotEstimable("no_runs", "Every first run was transferred in at an unknown time.")
     curve = curve_of(people)
     at, notes = horizon_table(audit.current, people)
     discharge = discharge_table(audit.current, people)
