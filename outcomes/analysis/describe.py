@@ -27,6 +27,7 @@ MISSING_COLUMNS = (
 )  # fmt: skip
 ABSENT = ("missing", "not_applicable", "withheld")
 SOME, MANY = 0.10, 0.40
+HUGE = 1e100
 _QUANTILE = "Hyndman RJ, Fan Y. Am Stat 1996;50:361-365."
 
 
@@ -102,10 +103,14 @@ class _Variable:
 
 
 def _numbers(values: Floats) -> dict[str, object]:
-    ordered = np.sort(values)
-    q25, median, q75 = (float(v) for v in np.quantile(ordered, [0.25, 0.5, 0.75]))
-    row: dict[str, object] = {"median": median, "q25": q25, "q75": q75, "mean": float(ordered.mean())}
-    return row | ({"std_dev": float(ordered.std(ddof=1))} if len(ordered) > 1 else {"reason": "one_run"})
+    ordered, largest = np.sort(values), float(np.abs(values).max())
+    scale = largest if largest > HUGE else 1.0  # squares of larger numbers overflow
+    q25, median, q75 = (scale * float(v) for v in np.quantile(ordered / scale, [0.25, 0.5, 0.75]))
+    mean = scale * float((ordered / scale).mean())
+    row: dict[str, object] = {"median": median, "q25": q25, "q75": q75, "mean": mean}
+    if len(ordered) < 2:
+        return row | {"reason": "one_run"}
+    return row | {"std_dev": scale * float((ordered / scale).std(ddof=1))}
 
 
 def _variable(name: str, column: pd.Series, as_levels: bool) -> _Variable:

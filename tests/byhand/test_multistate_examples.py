@@ -1,4 +1,4 @@
-"""Four runs: 1 off support at 2, home at 5; 2 dead on support at 3; 3 off at 4, dead at 6; 4 supported at 5."""
+"""Four runs: 1 off support at 2, home at 5; 2 dead on support at 3; 3 off at 4, dead at 6; 4 on at 5."""
 
 from __future__ import annotations
 
@@ -93,8 +93,8 @@ def test_late_entry_counts_in_the_risk_set_only() -> None:
 
 
 def test_runs_of_one_person_vary_together() -> None:
-    # Ten people with two runs of the same course: five die at 1, five are watched to 2. By run the variance of
-    # p = 1/2 is 1/80, by person 1/40, times 10/9.
+    # Ten people with two runs of the same course: five die at 1, five are watched to 2. By run the variance
+    # of p = 1/2 is 1/80, by person 1/40, times 10/9.
     rows = [
         (f"{p}{k}", 0, 1 if p < 5 else 2, "support", "dead" if p < 5 else None)
         for p in range(10)

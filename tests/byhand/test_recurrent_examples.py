@@ -1,6 +1,7 @@
 """Mean cumulative count of four runs.
 
-A: events 2 and 5, dies 6. B: event 3, censored 4. C: dies 3. D: event 5, censored 7. At risk 4 at 2 and 3, 2 at 5. S(3) = 3/4, S(6) = 3/8.
+A: events 2 and 5, dies 6. B: event 3, censored 4. C: dies 3. D: event 5, censored 7.
+At risk 4 at 2 and 3, 2 at 5. S(3) = 3/4, S(6) = 3/8.
 """
 
 from __future__ import annotations
