@@ -83,8 +83,9 @@ def test_a_run_split_at_any_time_changes_no_test(made: Runs) -> None:
     group, cut = halves(made), (made.entry + made.time) / 2
     assume((cut < made.time).all())
     whole = compared(made, group)
-    split = Runs(np.concatenate([made.time, cut]), np.concatenate([made.cause, np.zeros(len(made), dtype=int)]),
-                 np.concatenate([cut, made.entry]), np.concatenate([made.weight, made.weight]))  # fmt: skip
+    cause = np.concatenate([made.cause, np.zeros(len(made), dtype=int)])
+    split = Runs(np.concatenate([made.time, cut]), cause, np.concatenate([cut, made.entry]),
+                 np.concatenate([made.weight, made.weight]))  # fmt: skip
     assume(((cut > 0) & (made.entry < cut)).all())
     again = compared(split, np.concatenate([group, group]))
     same(whole.drop(columns="n"), again.drop(columns="n"), ("p_value",))
