@@ -8,6 +8,8 @@ import pandas as pd
 import pytest
 from harness import LOADERS, OUTSIDE, Case, cases, dataset, differences, joined, missing_data, of, outside
 
+ANSWERED = 129  # cases; raise it when another module of answers joins
+
 
 def skip(why: str) -> None:
     """Skips by name; never in continuous integration where the folder of data is there."""
@@ -36,3 +38,11 @@ def test_every_key_of_an_answers_module_is_a_case_or_a_method() -> None:
     known = {c.id for c in cases()} | {c.method for c in cases()}
     unknown = [key for part in joined().values() for key in part if key not in known]
     assert unknown == []
+
+
+def test_a_method_is_answered_for_all_its_cases() -> None:
+    """A method with an answer for one case has one, or a stated reason for none, for each of its cases."""
+    reached = {c.method for c in cases() if of("ANSWERS", c)}
+    forgotten = [c.id for c in cases() if c.method in reached and not (of("ANSWERS", c) or of("LEFT_OUT", c))]
+    assert forgotten == []
+    assert sum(bool(of("ANSWERS", c)) for c in cases()) >= ANSWERED
