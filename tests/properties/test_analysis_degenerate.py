@@ -4,12 +4,13 @@ from __future__ import annotations
 
 import itertools
 from collections.abc import Callable
-from dataclasses import dataclass
+from functools import partial
 from typing import Any
 
 import numpy as np
 import pandas as pd
 import pytest
+from analysis_odd import CODES, SITUATIONS, SIX, Made, sound
 
 from outcomes.analysis.compare import (
     difference_at,
@@ -24,66 +25,6 @@ from outcomes.analysis.rates import incidence_rate, mean_cumulative_count, propo
 from outcomes.analysis.result import Result
 from outcomes.analysis.survival import kaplan_meier, median_time, nelson_aalen, restricted_mean, survival_at
 from outcomes.errors import InputRefused, NotEstimable
-
-CODES = {
-    "no_runs", "one_run", "no_events", "no_nonevents", "too_few_events", "one_group", "empty_group",
-    "not_reached", "beyond_follow_up", "empty_risk_set", "zero_exposure", "zero_expected",
-    "constant_predictor", "constant_outcome", "collinear", "separation", "not_converged", "no_overlap",
-    "too_few_points", "zero_gap", "invalid_probability", "grouping_from_the_future", "below_sample_size",
-    "too_few_persons", "search_not_repeated", "unobserved_by_selection", "withheld",
-}  # fmt: skip
-
-
-@dataclass(frozen=True)
-class Made:
-    """Runs; cause 0, 1 or 2; group a or b, of which b may be empty."""
-
-    time: Any
-    cause: Any
-    entry: Any
-    group: Any
-
-    @property
-    def event(self) -> Any:
-        return (self.cause > 0).astype(int)
-
-
-def made(time: Any, cause: Any, entry: Any = 0, group: Any = None) -> Made:
-    t = np.atleast_1d(np.asarray(time, dtype=float))
-    labels = np.resize(["a", "b"], len(t)) if group is None else np.resize(group, len(t))
-    start = np.broadcast_to(np.asarray(entry, dtype=float), t.shape)
-    return Made(t, np.resize(cause, len(t)).astype(int), start, pd.Categorical(labels, categories=["a", "b"]))
-
-
-SIX = [1, 2, 2, 3, 4, 5]
-SITUATIONS = {
-    "no rows": made([], [0]),
-    "one row, an event": made([3], [1]),
-    "one row, censored": made([3], [0]),
-    "one row, an event at 0": made([0], [1]),
-    "one row, censored at 0": made([0], [0]),
-    "two rows": made([1, 2], [1, 0]),
-    "two rows, both events": made([1, 1], [1, 2]),
-    "two rows of one group": made([1, 2], [1, 0], group=["a"]),
-    "nobody has an event": made(SIX, [0]),
-    "everybody has the event": made(SIX, [1]),
-    "everybody has the other event": made(SIX, [2]),
-    "all at one time": made([4] * 6, [1, 2, 1]),
-    "all at one time, some censored": made([4] * 6, [1, 0, 2]),
-    "all censored at one time": made([4] * 6, [0]),
-    "one group empty": made(SIX, [1, 2, 0], group=["a"]),
-    "events only in one group": made(SIX, [1, 0], group=["a", "b"]),
-    "all at 0": made([0] * 6, [1, 2, 0]),
-    "some at 0": made([0, 0, 0, 1, 2, 3], [1, 2, 0]),
-    "a billion hours": made(np.array(SIX) * 1e9, [1, 2, 0]),
-    "a billionth": made(np.array(SIX) * 1e-9, [1, 2, 0]),
-    "seconds beside years": made([1e-6, 1, 1e9, 1e9, 1e9], [1, 2, 0]),
-    "late entry": made(SIX, [1, 2, 0], entry=[0, 1, 0, 2, 3, 0]),
-    "all enter late": made(SIX, [1, 2, 0], entry=np.array(SIX) - 0.5),
-    "nobody is watched for a while, after an event": made([1, 2, 6, 7], [1, 1, 1, 0], entry=[0, 0, 4, 4]),
-    "nobody is watched for a while, after censoring": made([1, 2, 6, 7], [1, 0, 1, 0], entry=[0, 0, 4, 4]),
-    "groups that never meet": made([1, 2, 6, 7], [1, 1, 1, 1], [0, 0, 4, 4], ["a", "a", "b", "b"]),
-}
 
 
 def _events(m: Made) -> tuple[Any, Any]:
@@ -108,10 +49,23 @@ def _exposed(m: Made) -> Any:
     return np.where(np.arange(len(m.time)) % 2 == 0, m.time / 2, np.nan)
 
 
+def _curve(m: Made, scale: str) -> Result:
+    return kaplan_meier(m.time, m.event, entry=m.entry, group=m.group, interval=scale, times=[0, 2.5, 9])
+
+
+KINDS = ("aalen", "infinitesimal_jackknife", "cmprsk")
+
+
+def _endings(m: Made, kind: str, scale: str) -> Result:
+    return cumulative_incidence(
+        m.time, m.cause, entry=None if kind == "cmprsk" else m.entry, group=m.group, causes=[1, 2],
+        variance=kind, interval=scale, times=[0, 2.5, 9],
+    )  # fmt: skip
+
+
 CALLS: dict[str, Callable[[Made], Result]] = {
-    **{f"kaplan_meier {scale}": lambda m, s=scale: kaplan_meier(
-        m.time, m.event, entry=m.entry, group=m.group, interval=s, times=[0, 2.5, 9]
-    ) for scale in ("log-log", "log", "plain", "arcsine")},
+    **{f"kaplan_meier {scale}": partial(_curve, scale=scale)
+       for scale in ("log-log", "log", "plain", "arcsine")},
     "kaplan_meier by person": lambda m: kaplan_meier(
         m.time, m.event, entry=m.entry, cluster=np.arange(len(m.time)) // 2
     ),
@@ -121,11 +75,8 @@ CALLS: dict[str, Callable[[Made], Result]] = {
     "nelson_aalen": lambda m: nelson_aalen(m.time, m.event, entry=m.entry, group=m.group, times=[0, 9]),
     "restricted_mean": lambda m: restricted_mean(m.time, m.event, 3, entry=m.entry, group=m.group),
     "restricted_mean of all": lambda m: restricted_mean(m.time, m.event, 3, entry=m.entry),
-    **{f"cumulative_incidence {kind} {scale}": lambda m, k=kind, s=scale: cumulative_incidence(
-        m.time, m.cause, entry=None if k == "cmprsk" else m.entry, group=m.group, causes=[1, 2],
-        variance=k, interval=s, times=[0, 2.5, 9],
-    ) for kind, scale in itertools.product(
-        ("aalen", "infinitesimal_jackknife", "cmprsk"), ("cloglog", "loglog", "plain"))},
+    **{f"cumulative_incidence {kind} {scale}": partial(_endings, kind=kind, scale=scale)
+       for kind, scale in itertools.product(KINDS, ("cloglog", "loglog", "plain"))},
     "compare_incidence": lambda m: compare_incidence(m.time, m.cause, m.group, causes=[1, 2]),
     "logrank": lambda m: logrank(m.time, m.event, m.group, entry=m.entry),
     "logrank rho": lambda m: logrank(m.time, m.event, m.group, entry=m.entry, rho=1),
@@ -145,25 +96,6 @@ CALLS: dict[str, Callable[[Made], Result]] = {
     "proportion by person": lambda m: proportion(m.event, cluster=np.arange(len(m.time)) // 2),
     "mean_cumulative_count": _counted,
 }  # fmt: skip
-
-
-def sound(result: Result) -> None:
-    """No NaN and no infinity; whatever is missing has a code of the closed list; bounds hold the estimate."""
-    table = result.table
-    assert len(table)
-    assert set(table["reason"].dropna()) <= CODES
-    for name in table.columns:
-        if table[name].dtype == "Float64":
-            assert np.isfinite(table[name].dropna().to_numpy(dtype=float)).all(), name
-        else:
-            assert table[name].dtype == "string", name
-    for name in ("estimate", "lower", "upper"):
-        if name in table.columns:
-            assert (table[name].notna() | table["reason"].notna()).all(), name
-    if "lower" in table.columns:
-        known = table[["estimate", "lower", "upper"]].dropna().to_numpy(dtype=float)
-        assert (known[:, 1] <= known[:, 0] * (1 + 1e-12) + 1e-12).all()
-        assert (known[:, 0] <= known[:, 2] * (1 + 1e-12) + 1e-12).all()
 
 
 @pytest.mark.parametrize("situation", SITUATIONS)
