@@ -18,6 +18,8 @@ from outcomes.errors import OutcomesError
 from outcomes.store import importing
 from outcomes.store.recover import Places, put_all_in_place, recover
 
+pytestmark = pytest.mark.thorough
+
 STEPS = ("replace", "link", "unlink", "fsync", "open")
 MORE = [ROWS[0].replace("1,A11", "8,A18")]
 

@@ -18,6 +18,8 @@ from outcomes.analysis.result import Result
 from outcomes.analysis.survival import kaplan_meier, median_time, nelson_aalen, restricted_mean
 from outcomes.errors import NotEstimable
 
+pytestmark = pytest.mark.thorough
+
 SETS = 200
 Row = tuple[int, int, int]  # entry (0: seen from the start), time, cause (0 censored)
 

@@ -23,6 +23,8 @@ from outcomes.analysis.competing import cumulative_incidence
 from outcomes.analysis.rates import incidence_rate, paired_difference, proportion, proportion_difference
 from outcomes.analysis.survival import kaplan_meier, nelson_aalen
 
+pytestmark = pytest.mark.thorough
+
 SEEDS = range(100)
 
 

@@ -25,6 +25,8 @@ from synthetic_cohort.settings import (
     WITHDRAWAL_SHARE,
 )
 
+pytestmark = pytest.mark.thorough
+
 STEP_H = 0.25
 N = 20_000
 # Without groups and without constants that undo severity the hazards are those of the tables times exp(c Z).

@@ -25,6 +25,8 @@ from synthetic_cohort import (
     write_export,
 )
 
+pytestmark = pytest.mark.thorough
+
 Page = dict[int, dict[str, Any]]
 """Physical line -> header -> cell."""
 
