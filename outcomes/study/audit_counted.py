@@ -87,59 +87,43 @@ def _stages(audit: Audit) -> list[dict[str, object]]:
     ]  # fmt: skip
 
 
+_SPECIAL = {
+    "later_runs": ("later runs of a person", "counted for endings and complications, not for survival"),
+    "no_first_run": (
+        "later runs whose first run is not in this period",
+        "the person is not in survival; bounds are given there",
+    ),
+    "open": ("still on support at the extract", "censored then; never counted as survivors"),
+    "transferred_in": ("transferred in on support", "observed from arrival on, if that time is known"),
+    "unknown_entry": (
+        "transferred in at an unknown time",
+        "in no curve and no rate: how long they had to survive is unknown",
+    ),
+    "transferred_out": (
+        "transferred out on support",
+        "censored at transfer; their later fate is unknown here",
+    ),
+}
+
+
 def _cannot_tell(audit: Audit) -> tuple[list[dict[str, object]], tuple[Caution, ...]]:
     """Lines for what an audit must name: later runs, open runs, transfers, attempts, people without a first run."""
-    cohort = audit.current
-    run = cohort.run
+    run = audit.current.run
     later = run[~run["is_first_run"]]
-    orphan = later[~later["person_key"].isin(run.loc[run["is_first_run"], "person_key"])]
-    lines = [
-        _line(
-            "later_runs",
-            "later runs of a person",
-            later,
-            "counted for endings and complications, not for survival",
-        ),
-        _line(
-            "no_first_run",
-            "later runs whose first run is not in this period",
-            orphan,
-            "the person is not in survival; bounds are given there",
-        ),
-        _line(
-            "open",
-            "still on support at the extract",
-            run[run["end_kind"] == "open"],
-            "censored then; never counted as survivors",
-        ),
-        _line(
-            "transferred_in",
-            "transferred in on support",
-            run[run["is_transferred_in"]],
-            "observed from arrival on, if that time is known",
-        ),
-        _line(
-            "unknown_entry",
-            "transferred in at an unknown time",
-            run[run["has_unknown_entry"].fillna(False).astype(bool)],
-            "in no curve and no rate: how long they had to survive is unknown",
-        ),
-        _line(
-            "transferred_out",
-            "transferred out on support",
-            run[run["end_kind"] == "transfer_out"],
-            "censored at transfer; their later fate is unknown here",
-        ),
-    ]
-    attempts = _attempts(cohort)
-    lines.append(attempts)
-    open_runs = int((run["end_kind"] == "open").sum())
-    cautions = (
-        [Caution("OPEN", "Some runs were still on support at the extract; they are censored, not survivors.")]
-        if open_runs
-        else []
-    )
-    return lines, tuple(cautions)
+    runs = {
+        "later_runs": later,
+        "no_first_run": later[~later["person_key"].isin(run.loc[run["is_first_run"], "person_key"])],
+        "open": run[run["end_kind"] == "open"],
+        "transferred_in": run[run["is_transferred_in"]],
+        "unknown_entry": run[run["has_unknown_entry"].fillna(False).astype(bool)],
+        "transferred_out": run[run["end_kind"] == "transfer_out"],
+    }
+    lines = [_line(key, label, runs[key], treatment) for key, (label, treatment) in _SPECIAL.items()]
+    lines.append(_attempts(audit.current))
+    if runs["open"].empty:
+        return lines, ()
+    said = "Some runs were still on support at the extract; they are censored, not survivors."
+    return lines, (Caution("OPEN", said),)
 
 
 def _line(key: str, label: str, rows: pd.DataFrame, treatment: str) -> dict[str, object]:
