@@ -4,7 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
+from typing import Any
 
+import numpy as np
 import pandas as pd
 
 # Columns in this order; a result holds those that apply, and always the same ones for one function.
@@ -66,17 +68,23 @@ def tidy(
     """A frame with exactly these columns and nullable types, whether or not there are rows.
 
     Text columns (group, cause, state, reason and those of `words`) become string, every other one Float64;
-    NaN becomes NA.
+    None and NaN become NA.
     """
-    frame = pd.DataFrame.from_records(list(rows), columns=list(columns))
-    return _typed(frame, words)
+    return tidy_columns({name: [row.get(name) for row in rows] for name in columns}, columns, words)
 
 
 def tidy_columns(
     values: Mapping[str, object], columns: Sequence[str], words: Sequence[str] = ()
 ) -> pd.DataFrame:
-    """The same from whole columns; a column that is not given is missing throughout."""
-    return _typed(pd.DataFrame(dict(values)).reindex(columns=list(columns)), words)
+    """The same from whole columns. A single value stands in every row; a column not given is missing."""
+    found = {name: np.asarray(v) if isinstance(v, pd.Series) else v for name, v in values.items()}
+    found = {name: found.get(name) for name in columns}
+    sizes = [len(v) for v in found.values() if isinstance(v, list | np.ndarray)]
+    size = sizes[0] if sizes else 0
+    return pd.DataFrame(
+        {name: _column(v, size, name in TEXT or name in words) for name, v in found.items()},
+        columns=list(columns),
+    )
 
 
 def joined(parts: Sequence[pd.DataFrame], columns: Sequence[str], words: Sequence[str] = ()) -> pd.DataFrame:
@@ -84,8 +92,13 @@ def joined(parts: Sequence[pd.DataFrame], columns: Sequence[str], words: Sequenc
     return pd.concat(parts, ignore_index=True) if parts else tidy([], columns, words)
 
 
-def _typed(frame: pd.DataFrame, words: Sequence[str]) -> pd.DataFrame:
-    for name in frame.columns:
-        is_text = name in TEXT or name in words
-        frame[name] = frame[name].astype("string" if is_text else "Float64")
-    return frame
+def _column(value: Any, size: int, is_text: bool) -> Any:
+    if not isinstance(value, list | np.ndarray):
+        value = [value] * size
+    if is_text:
+        known = [pd.NA if v is None or v is pd.NA or v != v else str(v) for v in value]
+        return pd.array(known, dtype="string")
+    if isinstance(value, list):
+        value = [np.nan if v is None or v is pd.NA else v for v in value]
+    numbers = np.array(value, dtype=np.float64)
+    return pd.arrays.FloatingArray(numbers, np.isnan(numbers))
