@@ -122,7 +122,7 @@ def test_every_pair_of_counts_is_answered() -> None:
 
 
 def test_every_four_counts_are_answered() -> None:
-    for a, b, c, d in itertools.product((0, 1, 2, 30), repeat=4):
+    for a, b, c, d in itertools.product((0, 1, 30), repeat=4):
         ok = answered(lambda v=(a, b, c, d): paired_difference(*v))  # type: ignore[misc]
         assert ok == (a + b + c + d > 0)
         if a <= b and c <= d:
