@@ -22,7 +22,6 @@ import sys
 import outcomes.command.import_files
 from outcomes import cli
 
-pytestmark = pytest.mark.thorough
 print("ready", flush=True)
 sys.stdin.readline()
 sys.exit(cli.main(sys.argv[1:]))
