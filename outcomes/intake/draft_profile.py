@@ -5,127 +5,180 @@ from __future__ import annotations
 import datetime as dt
 import re
 from collections import Counter
-from collections.abc import Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 
 import numpy as np
 
 from outcomes.findings import shape_of
-from outcomes.intake.draft_words import MISSING
+from outcomes.intake.draft_codes import MISSING
+from outcomes.intake.draft_moment import DATE, TIME, Pattern, pattern_of
+from outcomes.intake.draft_number import NUMBER, Marks, marks_of, number_of
 from outcomes.intake.reading.grid import Cell, ErrorCell, Number
 
+# What a draft may show of the cells: distinct codes if they are few, short and frequent; quartiles of enough values.
 MOST_CODES, LONGEST_CODE, FEWEST_SEEN, FEWEST_VALUES = 30, 24, 5, 10
-_SCAN = re.compile(r"[0-9]{5}|\S@\S|[0-9]{1,4}[-./][0-9]{1,2}[-./][0-9]{1,4}|\b(?:Dr|Mr|Mrs|Ms|Prof|Herr|Frau)\.? [A-Z]")
-_NUMBER = re.compile(r"-?[0-9]+([.,][0-9]+)?")
-_DATE = re.compile(r"([0-9]{1,4})([-./])([0-9]{1,2})\2([0-9]{1,4})(?:[ T]([0-9]{1,2}):([0-9]{2})(?::([0-9]{2}))?(?: ?([AaPp][Mm]))?)?")
-_TIME = re.compile(r"[0-9]{1,2}:[0-9]{2}(:[0-9]{2})?")
-_SPLIT = re.compile(r"[0-9]+/[0-9]+")
+_SCAN = re.compile(
+    r"[0-9]{5}|\S@\S|[0-9]{1,4}[-./][0-9]{1,2}[-./][0-9]{1,4}"
+    r"|\b(?:[Dd]r|[Mm]rs?|[Mm]s|[Mm]iss|[Pp]rof|[Dd]ipl|[Hh]err|[Ff]rau|[Ss]ir|[Dd]ame)\b\.? *[A-ZÄÖÜ]\w"
+)
+_SPLIT = re.compile(r"[0-9]{1,4} ?/ ?[0-9]{1,4}")
+_MOST = 0.9
 
 
 @dataclass
 class Profile:
-    """n cells, n_blank empty. codes: text -> count, only those that may be shown; rare: shapes of codes seen fewer than
-    five times. quartiles: of at least ten numbers. pattern: date pattern, '?' if month and day cannot be told apart."""
+    """What one column looks like.
 
-    n: int
-    n_blank: int
-    n_distinct: int
-    kind: str
-    decimal: str = ""
-    quartiles: tuple[float, float, float] | None = None
-    codes: dict[str, int] = field(default_factory=dict)
-    rare: list[str] = field(default_factory=list)
+    kind       'empty', 'moment', 'time', 'number', 'split' (two whole numbers with / between) or 'text'
+    n_filled   cells that hold something; missing words count as filled
+    n_distinct different texts among them
+    missing    words of MISSING that stand in the column
+    others     shapes of cells that are not of this kind, with counts
+    codes      code -> count, only those that may be shown, joined where they differ by capitals
+    rare       shapes of codes seen fewer than five times, with counts
+    quartiles  of at least ten numbers, exact; `quartile_words` rounds them. parts: the same for both parts of a split
+    """
+
+    n: int = 0
+    n_filled: int = 0
+    n_distinct: int = 0
+    kind: str = "empty"
     missing: tuple[str, ...] = ()
-    pattern: str = ""
-    proof: str = ""
+    others: tuple[str, ...] = ()
+    codes: dict[str, int] = field(default_factory=dict)
+    rare: tuple[str, ...] = ()
+    folds: bool = False
+    marks: Marks = field(default_factory=Marks)
+    quartiles: tuple[float, float, float] | None = None
+    n_numbers: int = 0
+    parts: tuple[tuple[float, float, float] | None, ...] = ()
+    pattern: Pattern | None = None
+    n_words: float = 0.0
+    is_identifying: bool = False
 
     @property
-    def is_unique(self) -> bool:
-        return self.n_distinct == self.n - self.n_blank and self.n_blank == 0
+    def n_blank(self) -> int:
+        return self.n - self.n_filled
+
+    @property
+    def distinct_share(self) -> float:
+        return self.n_distinct / self.n_filled if self.n_filled else 0.0
+
+
+def cell_word(cell: Cell) -> str:
+    """A cell as the draft compares it: trimmed, '' for nothing."""
+    if cell is None or isinstance(cell, ErrorCell):
+        return ""
+    if isinstance(cell, bool):
+        return "TRUE" if cell else "FALSE"
+    if isinstance(cell, (dt.date, dt.time)):
+        return cell.isoformat()
+    return cell.text if isinstance(cell, Number) else cell.strip()
 
 
 def profile(cells: Sequence[Cell]) -> Profile:
-    """The profile of one column."""
-    words = [_word(c) for c in cells]
-    filled = [w for w in words if w]
-    tokens = tuple(sorted({w for w in filled if w in MISSING}))
-    values = [w for w in filled if w not in MISSING]
-    typed_dates = sum(isinstance(c, dt.date) for c in cells)
-    made = Profile(len(cells), len(words) - len(filled), len(set(filled)), "text", missing=tokens)
-    if not values:
-        made.kind = "empty"
-    elif typed_dates >= 0.9 * len(values):
-        made.kind = "moment"
-    elif _share(_DATE, values) >= 0.9:
-        made.kind = "moment"
-        made.pattern, made.proof = _pattern([m for v in values if (m := _DATE.fullmatch(v))])
-    elif _share(_SPLIT, values) >= 0.9:
-        made.kind = "split"
-    elif _share(_TIME, values) >= 0.9:
-        made.kind = "time"
-    elif _share(_NUMBER, values) >= 0.9:
-        made.kind = "number"
-        made.decimal = "," if any("," in v for v in values) else "."
-        made.quartiles = _quartiles([float(v.replace(",", ".")) for v in values if _NUMBER.fullmatch(v)])
-    _codes(made, filled)
+    """The profile of one column. Typed numbers and dates need no marks and no pattern; those go by the texts alone."""
+    counts = Counter(word for word in map(cell_word, cells) if word)
+    made = Profile(n=len(cells), n_filled=counts.total(), n_distinct=len(counts))
+    made.missing = tuple(sorted(counts.keys() & set(MISSING)))
+    values = {word: n for word, n in counts.items() if word not in MISSING}
+    total = sum(values.values())
+    if total:
+        typed = Counter(cell_word(c) for c in cells if isinstance(c, (dt.date, Number)))
+        made.kind = _kind(values, total, {cell_word(c) for c in cells if isinstance(c, dt.date)})
+        _look_closer(made, values, typed)
+        made.n_words = sum(n * len(word.split()) for word, n in values.items()) / total
+        made.is_identifying = _share(values, total, lambda w: bool(re.search(r"[0-9]{5}|\S@\S", w))) >= _MOST
+    _codes(made, counts)
     return made
 
 
-def _word(cell: Cell) -> str:
-    if cell is None or isinstance(cell, ErrorCell):
-        return ""
-    return cell.text if isinstance(cell, Number) else str(cell).strip()
+def _share(values: dict[str, int], total: int, test: Callable[[str], object]) -> float:
+    return sum(n for word, n in values.items() if test(word)) / total
 
 
-def _share(form: re.Pattern[str], values: Sequence[str]) -> float:
-    return sum(form.fullmatch(v) is not None for v in values) / len(values)
+def _kind(values: dict[str, int], total: int, dates: set[str]) -> str:
+    kinds: tuple[tuple[str, Callable[[str], object]], ...] = (
+        ("moment", lambda w: w in dates or DATE.fullmatch(w)),
+        ("time", TIME.fullmatch),
+        ("split", _SPLIT.fullmatch),
+        ("number", NUMBER.fullmatch),
+    )
+    return next((kind for kind, test in kinds if _share(values, total, test) >= _MOST), "text")
 
 
-def _quartiles(values: list[float]) -> tuple[float, float, float] | None:
-    """Rounded to two significant digits; None for fewer than ten values."""
+def _look_closer(made: Profile, values: dict[str, int], typed: Counter[str]) -> None:
+    test = {"moment": DATE, "time": TIME, "split": _SPLIT, "number": NUMBER}.get(made.kind)
+    if test is None:
+        return
+    fitting = {w: n for w, n in values.items() if test.fullmatch(w)}
+    made.others = _shapes((w, n) for w, n in values.items() if w not in fitting and w not in typed)
+    written = {w: n - typed[w] for w, n in fitting.items() if n > typed[w]}
+    if made.kind == "moment" and written:
+        made.pattern = pattern_of(written)
+    elif made.kind == "number":
+        made.marks = marks_of(written)
+        numbers = [
+            (number_of(w, made.marks if w in written else Marks(".")), n) for w, n in sorted(fitting.items())
+        ]
+        made.n_numbers = sum(n for v, n in numbers if v is not None)
+        made.quartiles = _quartiles(numbers)
+    elif made.kind == "split":
+        made.n_numbers = sum(fitting.values())
+        made.parts = tuple(
+            _quartiles((float(w.split("/")[i]), n) for w, n in sorted(fitting.items())) for i in (0, 1)
+        )
+
+
+def _quartiles(numbers: Iterable[tuple[float | None, int]]) -> tuple[float, float, float] | None:
+    values = [v for v, n in numbers if v is not None for _ in range(n)]
     if len(values) < FEWEST_VALUES:
         return None
-    low, middle, high = (float(f"{q:.2g}") for q in np.quantile(values, [0.25, 0.5, 0.75]))
-    return low, middle, high
+    low, middle, high = np.quantile(values, [0.25, 0.5, 0.75])
+    return float(low), float(middle), float(high)
 
 
-def _codes(made: Profile, filled: Sequence[str]) -> None:
+def quartile_words(quartiles: tuple[float, float, float]) -> str:
+    """Rounded to two significant digits, so that no single value can be read off.
+
+    >>> quartile_words((24.3, 41.26, 67.0))
+    'median about 41, half of the values between 24 and 67'
+    """
+    low, middle, high = (f"{float(f'{q:.2g}'):.10g}" for q in quartiles)
+    return f"median about {middle}, half of the values between {low} and {high}"
+
+
+def caught(text: str) -> bool:
+    """A text that may name a person: five digits in a row, an e-mail address, a date, a title before a name."""
+    return bool(_SCAN.search(text))
+
+
+def _codes(made: Profile, counts: Counter[str]) -> None:
     """Codes may be shown only if there are few, short, frequent ones and none looks like a person's."""
-    counts = Counter(filled)
-    few = made.n_distinct <= MOST_CODES and (made.n_distinct <= 12 or made.n_distinct < 0.2 * len(filled))
-    if not filled or not few or any(len(c) > LONGEST_CODE or _SCAN.search(c) for c in counts):
+    few = made.n_distinct <= MOST_CODES and (made.n_distinct <= 12 or made.distinct_share < 0.2)
+    if not counts or not few or any(len(c) > LONGEST_CODE or caught(c) for c in counts):
         return
-    made.codes = {c: n for c, n in sorted(counts.items()) if n >= FEWEST_SEEN}
-    made.rare = sorted(f"{n} x {shape_of(c)}" for c, n in counts.items() if n < FEWEST_SEEN)
+    groups: dict[str, Counter[str]] = {}
+    for word, n in counts.items():
+        groups.setdefault(word.lower(), Counter())[word] = n
+    made.folds = any(len(spellings) > 1 for spellings in groups.values())
+    rare = []
+    for folded, spellings in sorted(groups.items()):
+        commonest = max(spellings, key=lambda w: (spellings[w], w))
+        if spellings.total() >= FEWEST_SEEN:
+            made.codes[commonest if spellings[commonest] >= FEWEST_SEEN else folded] = spellings.total()
+        elif folded not in {word.lower() for word in MISSING}:
+            rare.append((commonest, spellings.total()))
+    made.rare = _shapes(rare)
 
 
-def _pattern(found: Sequence[re.Match[str]]) -> tuple[str, str]:
-    """Date pattern, and how many values prove which of month and day comes first."""
-    year_first = sum(len(m[1]) == 4 for m in found) > len(found) / 2
-    mark = Counter(m[2] for m in found).most_common(1)[0][0]
-    clock = _clock(found)
-    if year_first:
-        return f"YYYY{mark}MM{mark}DD{clock}", "the year stands first"
-    above_first = sum(int(m[1]) > 12 for m in found)
-    above_second = sum(int(m[3]) > 12 for m in found)
-    day, month = _width(found, 1), _width(found, 3)
-    if above_first > above_second:
-        return f"{'DD' if day else 'D'}{mark}{'MM' if month else 'M'}{mark}YYYY{clock}", f"{above_first} values have a first part above 12"
-    if above_second > above_first:
-        return f"{'MM' if day else 'M'}{mark}{'DD' if month else 'D'}{mark}YYYY{clock}", f"{above_second} values have a second part above 12"
-    return "?", "no value shows whether the day or the month stands first"
-
-
-def _width(found: Sequence[re.Match[str]], part: int) -> bool:
-    """True if this part always has two digits."""
-    return all(len(m[part]) == 2 for m in found)
-
-
-def _clock(found: Sequence[re.Match[str]]) -> str:
-    timed = [m for m in found if m[5]]
-    if not timed:
-        return ""
-    half = any(m[8] for m in timed)
-    hour = ("hh" if half else "HH") if _width(timed, 5) else ("h" if half else "H")
-    sign = "T" if "T" in timed[0][0] else " "
-    return f"{sign}{hour}:mm{':ss' if timed[0][7] else ''}{' AM' if half else ''}"
+def _shapes(words: Iterable[tuple[str, int]], most: int = 12) -> tuple[str, ...]:
+    """Counts and shapes, the commonest first; '3 x <9.9' stands for all cells of that shape."""
+    shapes: Counter[str] = Counter()
+    for word, n in words:
+        shapes[shape_of(word)] += n
+    listed = sorted(shapes.items(), key=lambda item: (-item[1], item[0]))
+    return tuple(f"{n} x {shape}" for shape, n in listed[:most]) + (
+        (f"and {len(listed) - most} more shapes",) if len(listed) > most else ()
+    )

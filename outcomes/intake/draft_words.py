@@ -1,139 +1,189 @@
-"""Trade words, English and German, by which a draft proposes fields, units and codes. Proposals only: a person decides."""
+"""Trade words, English and German, by which a draft proposes fields. Proposals only: a person decides.
+
+The words are common practice of intensive care charts. Each pattern is looked for in the folded header (`plain`).
+"""
 
 from __future__ import annotations
 
 import re
+import unicodedata
 
-# (pattern on the folded header, field). The first that matches proposes; a tie between fields is left open.
-FIELDS: tuple[tuple[str, str], ...] = (
-    (r"date of birth|birth ?date|\bdob\b|geburtsdatum|\bborn\b", "person.birth_date"),
-    (r"birth ?year|year of birth|\byob\b|geburtsjahr", "person.birth_year"),
-    (r"\bsex\b|gender|geschlecht", "person.sex_recorded"),
-    (r"\bage\b|\balter\b", "support_run.age_years"),
-    (r"weight|gewicht|body mass\b|\bkg\b", "support_run.weight_kg"),
-    (r"height|gr(oe|ö)sse|größe", "person.height_cm"),
-    (r"first onset|onset", "complication"),
-    (r"(arrest|cpr).*(before|vor)|vor.*cpr|cpr vor", "pre_support_state.had_arrest"),
-    (r"low.?flow|minutes of cpr|cpr.*min", "arrest_episode.low_flow_min"),
-    (r"intubat", "pre_support_state.intubated_at"),
-    (r"beatmungsstunden|ventilat.*hours|hours.*ventilat", "pre_support_state.intubation_hours"),
-    (r"\bpip\b|peak insp|pmax|airway pressure", "measurement.peak_inspiratory_pressure"),
-    (r"\bsbp\b|rrsys|systol", "measurement.sbp"),
-    (r"\bdbp\b|rrdia|diastol", "measurement.dbp"),
-    (r"\bmap\b|mean arterial", "measurement.map"),
-    (r"^ph\b|arterial ph", "measurement.ph_arterial"),
-    (r"bicarb|hco3", "measurement.bicarbonate"),
-    (r"lact|laktat", "measurement.lactate"),
-    (r"creatinine|kreatinin|\bcrea\b", "measurement.creatinine"),
-    (r"bilirubin", "measurement.bilirubin_total"),
-    (r"\balt\b|\bgpt\b", "measurement.alt"),
-    (r"\bast\b|\bgot\b", "measurement.ast"),
-    (r"\binr\b", "measurement.inr"),
-    (r"platelet|thrombo(zyten)?\b|\bplt\b", "measurement.platelets"),
-    (r"glucose|glukose", "measurement.glucose"),
-    (r"h(a)?emoglobin|\bhb\b", "measurement.haemoglobin"),
-    (r"prothrombin|quick", "measurement.prothrombin_activity"),
-    (r"\bgcs\b|glasgow", "measurement.gcs_total"),
-    (r"vti", "lvot_vti"),
-    (r"s'|s prime|lateral s", "lateral_s_prime"),
-    (r"lvef|ejection|\bef\b", "lvef"),
-    (r"flow l|fluss|pump flow|trial flow", "weaning_step.flow_l_min"),
-    (r"chron.*(kidney|renal|niere)|dialysis|\bckd\b", "history.chronic_kidney_disease"),
-    (r"(acute|akut|kidney fail|renal fail).*|nierenversagen", "pre_support_state.acute_renal_failure"),
-    (r"liver|leber", "pre_support_state.liver_failure"),
-    (r"\bcns\b|\bzns\b|neurolog", "pre_support_state.cns_dysfunction"),
-    (r"leg (perf|cann)|beinperf|limb perf", "cannulation.leg_cannula"),
-    (r"right radial|radialis rechts|right.*line", "cannulation.right_sided_monitoring"),
-    (r"return|r(ue|ü)ckgabe", "cannulation.arterial_return"),
-    (r"how.*ended|ende ?code|exit|end(ing)? (kind|code)|outcome of support", "support_end.kind"),
-    (r"surgical (removal|repair)|arterial repair", "support_end.arterial_repair"),
-    (r"alive|lebend|survived", "hospital_outcome.is_alive_at_discharge"),
-    (r"discharge|entlass", "hospital_outcome.discharge"),
-    (r"\bcpc\b", "neuro_outcome.cpc"),
-    (r"\bmrs\b|rankin", "neuro_outcome.mrs"),
-    (r"dead|verstorben|deceased|died", "follow_up.vital_status"),
-    (r"last (seen|contact)|letzter kontakt", "follow_up.contact"),
-    (r"reason|diagnos|indication|grund", "indication.group"),
-    (r"plan|strateg|intended", "support_run.intended_pathway"),
-    (r"complication|komplikation|event (kind|code)", "complication_event.kind"),
-    (r"severity|schwere|grade", "complication_event.grade"),
-    (r"on support|support start|^start|^beginn|flow on|on pump", "support_run.start"),
-    (r"off support|support end|^end$|^ende$|flow off|off pump", "support_end.end"),
-)  # fmt: skip
+_LETTERS = str.maketrans(
+    {
+        "ä": "ae",
+        "ö": "oe",
+        "ü": "ue",
+        "ß": "ss",
+        "’": "'",
+        "′": "'",
+        "´": "'",
+        "`": "'",
+        "_": " ",
+        "µ": "u",
+        "μ": "u",
+    }
+)
+_CAMEL = re.compile(r"(?<=[a-zäöü]{2})(?=[A-ZÄÖÜ][a-zäöü])")
 
-PRIVATE = r"name\b|nickname|phone|telefon|address|adresse|e-?mail|comment|remark|notes?\b|bemerk|notiz|free text|insurance|versicher"
 
-UNITS: tuple[tuple[str, str], ...] = (
-    (r"mg/dl", "mg/dL"), (r"mmol/l", "mmol/L"), (r"[uµ]mol/l", "umol/L"), (r"meq/l", "meq/L"), (r"g/dl", "g/dL"), (r"k/ul", "K/uL"),
-    (r"g/l\b", "G/L"), (r"mbar", "mbar"), (r"cm ?h2o", "cm[H2O]"), (r"kpa", "kPa"), (r"mm ?hg", "mm[Hg]"), (r"\blb", "[lb_av]"),
-    (r"\(in\)|inch", "[in_i]"), (r"\bkg\b", "kg"), (r"cm/s", "cm/s"), (r"\bcm\b", "cm"), (r"l/min", "L/min"), (r"\bmin(utes)?\b", "min"),
-    (r"stunden|hours|\(h\)", "h"), (r"%", "%"),
-)  # fmt: skip
+def plain(text: str) -> str:
+    """A header or code as these lists spell it.
+
+    >>> plain("SupportStart"), plain("Größe_cm"), plain("pH")
+    ('support start', 'groesse cm', 'ph')
+    """
+    spaced = _CAMEL.sub(" ", unicodedata.normalize("NFC", text))
+    return " ".join(spaced.casefold().translate(_LETTERS).split())
+
 
 COMPLICATIONS: tuple[tuple[str, str], ...] = (
-    (r"cannulation site|kan(ue|ü)lierungsstelle", "bleeding_cannulation_site"), (r"gastrointestinal", "bleeding_gastrointestinal"),
-    (r"limb isch|bein.*isch", "limb_ischaemia"), (r"h(a)?emolysis|h(ae|ä)molyse", "haemolysis"), (r"circuit thromb", "circuit_thrombosis"),
-    (r"oxygenator", "oxygenator_thrombosis"), (r"stroke|schlaganfall", "stroke"), (r"bloodstream|sepsis", "infection_bloodstream"),
-    (r"lv dist|ventricular dist", "lv_distension"), (r"differential hypox", "differential_hypoxaemia"),
-    (r"renal replacement|nierenersatz|\brrt\b", "renal_replacement"), (r"arrest", "arrest_on_support"),
+    ("bleeding_cannulation_site", r"(bleed\w*|ha?emorrhage|blutung).*(cannul\w*|kanuel\w*)( site)?|(cannul\w*|kanuel\w*).*(bleed\w*|blutung)"),
+    ("bleeding_gastrointestinal", r"gastro ?-?intestinal\w*( (bleed\w*|blutung))?|\bgi[- ]?(bleed\w*|blutung)"),
+    ("bleeding_surgical_site", r"(bleed\w*|blutung).*(surg\w*|chest|thorax|mediast\w*)|surgical( site)? bleed\w*|chirurgische blutung"),
+    ("bleeding_other", r"other bleed\w*|sonstige blutung"),
+    ("stroke_ischaemic", r"isch\w* (stroke|insult|schlaganfall)|cerebral infarct\w*|hirninfarkt"),
+    ("intracranial_haemorrhage", r"intra ?-?(cranial|cerebral) (bleed\w*|ha?emorrhage)|intrakranielle blutung|hirnblutung|\bich\b"),
+    ("stroke", r"\bstroke\b|schlaganfall|apoplex\w*|\binsult\b"),
+    ("limb_ischaemia", r"(limb|leg) isch\w*|(bein|extremitaeten) ?-?isch\w*"),
+    ("compartment_syndrome", r"compartment\w*( syndrome)?|kompartment\w*|fas[cz]iotom\w*"),
+    ("vascular_injury", r"vascular injur\w*|gefaess ?-?verletzung\w*"),
+    ("differential_hypoxaemia", r"differential hypox\w*|differen[tz]ielle hypox\w*|watershed"),
+    ("lv_distension", r"(lv|ventric\w*) (over)?disten[st]i?\w*|lv[- ]?ueberdehnung"),
+    ("intracardiac_thrombus", r"(intra ?-?cardiac|root|lv|intrakardialer?) thromb\w*"),
+    ("haemolysis", r"ha?emoly[sz]\w*"),
+    ("oxygenator_thrombosis", r"oxygenator ?-?(thromb|clot)\w*"),
+    ("pump_head_thrombosis", r"pump(en)? ?-?(head|kopf) ?-?(thromb|clot)\w*"),
+    ("circuit_thrombosis", r"(circuit|system) ?-?(thromb|clot)\w*"),
+    ("gas_transfer_failure", r"gas[- ]?(transfer|exchange) failure|oxygenator ?-?(failure|versagen)"),
+    ("pump_failure", r"pump (failure|stop)|pumpen ?-?(ausfall|versagen)"),
+    ("cannula_dislodgement", r"dislo[dk]\w*"),
+    ("air_entrainment", r"air (entrain\w*|embol\w*|in circuit)|luft ?-?(embolie|eintritt)"),
+    ("infection_cannula_site", r"cannul\w*[- ]site infect\w*|kanuelen ?-?infekt\w*"),
+    ("infection_bloodstream", r"blood ?stream infect\w*|bacter?a?emia|sepsis|bakteriaemie|blutstrom ?-?infekt\w*"),
+    ("infection_respiratory", r"pneumon\w*|respiratory infect\w*|atemwegs ?-?infekt\w*"),
+    ("infection_other", r"other infect\w*|sonstige infekt\w*"),
+    ("acute_kidney_injury", r"acute kidney injury|\baki\b|akute nierenschaedigung"),
+    ("renal_replacement", r"renal replacement\w*( therapy)?|nierenersatz\w*|\bc?rrt\b|ha?emofilt\w*|dialys\w*"),
+    ("arrest_on_support", r"(cardiac )?arrest (on|during) (support|va|pump)|reanimation (unter|am|an) \w+|cpr (on|during) support"),
 )  # fmt: skip
 
-CODES: dict[str, tuple[tuple[str, str], ...]] = {
-    "boolean": ((r"(yes|y|true|ja|j)", "true"), (r"(no|n|false|nein)", "false"), (r"n/?a|entf(ä|ae)llt", "not applicable")),
-    "sex": ((r"(m|male|m(ae|ä)nnlich)", "male"), (r"(f|w|female|weiblich)", "female")),
-    "intended_pathway": (
-        (r"recovery|erholung", "recovery"), (r"decision|entscheidung", "decision"), (r"(durable )?lvad", "durable_lvad"),
-        (r"transplant(ation)?", "transplantation"),
-    ),
-    "end_kind": (
-        (r"weaned|recovery|entw(oe|ö)hnt", "recovery"), (r"(durable )?lvad", "durable_lvad"), (r"transplant(ation|ed)?", "transplantation"),
-        (r"died.*|death.*|verstorben", "death"), (r".*withdrawn|withdrawal", "withdrawal"), (r"transfer.*", "transfer_out"),
-        (r"(still )?on support", "open"),
-    ),
-    "arterial_return": ((r"femoral", "femoral"), (r"axillary|axill(ae|ä)r", "axillary"), (r"central|zentral", "central")),
-    "vital_status": ((r"(yes|dead|ja|verstorben)", "dead"), (r"(no|alive|nein|lebend)", "alive")),
-    "indication_group": (
-        (r".*infarct.*", "acute_myocardial_infarction"), (r"(chronic )?cardiomyopathy|heart failure", "decompensated_chronic_heart_failure"),
-        (r"myocarditis", "myocarditis"), (r".*vt/?vf.*|.*arrhythmia", "refractory_ventricular_arrhythmia"), (r"post.?cardiotomy", "post_cardiotomy"),
-        (r"graft (failure|dysfunction)", "primary_graft_dysfunction_heart"), (r"pulmonary embolism", "pulmonary_embolism"),
-        (r"septic cardiomyopathy", "septic_cardiomyopathy"), (r"intoxication|poisoning", "toxic_or_drug"), (r"congenital", "congenital_adult"),
-        (r"(cardiac )?arrest", "arrest_without_cause"), (r"valve.*", "valve_disease_acute"),
-    ),
-    "complication_kind": tuple((f".*({p}).*", k) for p, k in COMPLICATIONS),
-}  # fmt: skip
+_BEFORE = r"(before|prior|pre|vor|vorher|at start)\b\w*"
+_WHEN = r"onset|\btime\b|\bdate\b|\bdatum\b|\bzeit(punkt)?\b|\bat\b|\bwhen\b"
+_FROM, _TO = r"\bfrom\b|\bvon\b|\bstart\w*|\bbegin\w*", r"\bto\b|\bbis\b|\bend[e]?\b|\bstop\b"
 
-MISSING = ("n/a", "N/A", "na", "NA", "unk", "unknown", "unbekannt", "k.A.", "k. A.", "-", "--", ".", "?", "missing")
-
-
-def propose_field(header: str, row_is: str) -> list[str]:
-    """Fields that the words of a header suggest, the likeliest first."""
-    text = header.strip().lower()
-    found = []
-    for pattern, field in FIELDS:
-        if re.search(pattern, text):
-            found += _fields_of(field, text, row_is)
-    return list(dict.fromkeys(found))
-
-
-def _fields_of(field: str, text: str, row_is: str) -> list[str]:
-    if field == "complication":
-        return [f"complication.{kind}" for pattern, kind in COMPLICATIONS if re.search(pattern, text)]
-    if field in ("lvef", "lvot_vti", "lateral_s_prime"):
-        column = {"lvef": "lvef_percent", "lvot_vti": "lvot_vti_cm", "lateral_s_prime": "lateral_s_prime_cm_s"}[field]
-        return [f"weaning_step.{column}" if row_is == "detail" else f"measurement.{field}"]
-    return [field]
-
-
-def propose_unit(header: str) -> str:
-    """The unit that a header states, '' if it states none."""
-    return next((unit for pattern, unit in UNITS if re.search(pattern, header.lower())), "")
-
-
-def propose_code(text: str, list_name: str) -> str:
-    """Our code for a source text, '?' if no trade word fits."""
-    folded = text.strip().lower()
-    return next((code for pattern, code in CODES.get(list_name, ()) if re.fullmatch(pattern, folded)), "?")
-
-
-def is_private(header: str) -> bool:
-    return bool(re.search(PRIVATE, header.lower()))
+FIELDS: tuple[tuple[str, str], ...] = (
+    ("person.birth_date", r"date of birth|birth ?date|\bdob\b|geburtsdatum|\bborn\b|geboren\w*|^geb\b|\bbirth\b|\bgeburt\b"),
+    ("person.birth_year", r"(birth ?year|year of birth)|\byob\b|geburtsjahr|jahrgang|\bbirth\b|\bgeburt\b"),
+    ("person.sex_recorded", r"\bsex\b|gender|geschlecht"),
+    ("person.height_cm", r"\bheight\b|groesse|koerperlaenge"),
+    ("support_run.age_years", r"\bage\b|\balter\b"),
+    ("support_run.weight_kg", r"weight|gewicht|^kg$"),
+    ("support_run.start", r"\bon (support|pump|ecmo|ecls)\b|(start|begin\w*) of (support|flow|run|ecmo|ecls)|(support|pump|flow|run|ecmo|ecls)[- ](on|start\w*|beg[ia]n\w*)\b|^start( (date|time|datum))*$|^beginn\b|^begin\b|flow on|(ecmo|ecls)?[- ]?anlage\b"),
+    ("support_end.end", r"\boff (support|pump|ecmo|ecls)\b|end of (support|flow|run|ecmo|ecls)|(support|pump|flow|run|ecmo|ecls)[- ](off|end\w*|stop\w*)\b|^end( (date|time|datum))*$|^ende\b|flow off|explant\w*|decannulat\w*|dekanuelierung"),
+    ("support_end.duration", r"duration of support|(hours|days) (of|on) support|(support|run|pump|ecmo|ecls)[- ](hours|days|duration)|laufzeit|unterstuetzungsdauer"),
+    ("support_end.kind", r"how .*\bended|end(e|ing)?[- ]?(code|kind|type|reason|art|grund)\b|\bexit\b|(outcome of support|support outcome)"),
+    ("support_end.end_planned", r"planned (end|removal)|end planned|ende geplant"),
+    ("support_end.decannulation_place", r"(place|ort) .*(removal|decannulat\w*|explant\w*)"),
+    ("support_end.arterial_repair", r"surgical (removal|repair|decannulation)|arterial (repair|closure)|chirurgische (entfernung|dekanuelierung)|gefaessverschluss"),
+    ("support_end.device_implanted", r"(l?vad|device) (type|implanted)|device implanted"),
+    ("support_end.device_implant", r"(l?vad|device)[- ]?implant\w*( (date|time))?|l?vad date"),
+    ("support_end.transplant", r"(date of )?(heart )?transplant(ation)?( date| time)?$|htx[- ]?(datum|date)?"),
+    ("support_end.withdrawal_reason", r"(reason|grund).*(withdraw\w*|abbruch)|withdrawal reason|abbruchgrund"),
+    ("support_end.death_cause_group", r"cause of death|death cause|todesursache"),
+    ("support_end.organ_donation", r"organ ?(donat\w*|spende)"),
+    ("support_run.intended_pathway", r"\bplan\b( at start)?|strateg\w*|intended( pathway)?|intention|therapieziel|bridge plan"),
+    ("support_run.transferred_in", r"transfer\w* in\b|from other hospital|zuverlegt\w*"),
+    ("support_run.arrival", r"\barriv\w*|ankunft|eintreffen"),
+    ("support_run.cannulated_where", r"where cannulated|cannulat\w* (where|place|location)|kanuelierungsort|ort der kanuelierung"),
+    ("support_run.decision", r"(time|date) of decision|decision (time|date)|entscheidungszeit\w*"),
+    ("support_run.cannulation_start", r"(start|begin\w*) of cannulation|cannulation (start|begin\w*)|punktionszeit\w*"),
+    ("support_run.converted_from_vv", r"converted|(from|aus) v-?v\b"),
+    ("indication.group", r"\breason\b( for support)?|diagnos\w*|indi[kc]ation\w*|\bgrund\b|a?etiolog\w*"),
+    ("history.chronic_kidney_disease", r"chron\w*\.? ?(kidney|renal|nieren?)\w*( (disease|failure|insuff\w*))?|\bckd\b|niereninsuff\w*"),
+    ("history.dialysis_dependent", r"(chronic |chronische )?dialys\w*( dependent)?|dialysepflicht\w*"),
+    ("history.ckd_stage", r"ckd[- ](stage|stadium)"),
+    ("history.prior_myocardial_infarction", r"(prior|previous|old|history of|z\. ?n\.) (mi\b|myocardial infarct\w*|myokardinfarkt)"),
+    ("history.prior_cabg", r"\bcabg\b|bypass-?op"),
+    ("history.prior_cardiac_surgery", r"(prior|previous) (cardiac|heart) surgery|vor-?op.*herz|\bredo\b"),
+    ("history.prior_stroke", r"(prior|previous|history of|z\. ?n\.) (stroke|schlaganfall|apoplex\w*)"),
+    ("history.diabetes", r"diabet\w*"),
+    ("history.hypertension", r"\bhypertension\b|hypertonie"),
+    ("history.peripheral_artery_disease", r"peripheral (arter\w*|vascular)( disease)?|\bpavk\b"),
+    ("history.immunosuppressed", r"immun ?o?[- ]?suppress\w*|immunsuppr\w*"),
+    ("history.frailty_scale", r"frail\w*|gebrechlich\w*"),
+    ("history.durable_vad_before", rf"l?vad {_BEFORE}|previous l?vad"),
+    ("pre_support_state.had_arrest", rf"(cardiac )?arrest {_BEFORE}( start| support)?|(cpr|reanimation) {_BEFORE}( start| support)?|pre[- ]?support (arrest|cpr)|\bcpr\b|reanimation|\barrest\b"),
+    ("pre_support_state.arrest_location", r"(place|location|ort) .*arrest|arrest (place|location)"),
+    ("pre_support_state.extracorporeal_cpr", r"\be-?cpr\b|extracorporeal cpr|extrakorporale reanimation"),
+    ("pre_support_state.shock_stage", r"shock[- ](stage|class)|schock ?stadium"),
+    ("pre_support_state.acute_coronary_syndrome", r"\bacs\b|acute coronary( syndrome)?|akutes koronarsyndrom"),
+    ("pre_support_state.stemi", r"\bstemi\b"),
+    ("pre_support_state.pci_done", r"\bpci\b"),
+    ("pre_support_state.intubated_at", r"intubat\w*( (at|time|date))?|intubiert\w*"),
+    ("pre_support_state.intubation_hours", r"beatmungs ?-?(stunden|dauer)( vorher)?|(hours|stunden) .*(ventilat|intubat|beatm)\w*|(ventilat|intubat|beatm)\w*.*(hours|stunden|duration|dauer|\bh\b)"),
+    ("pre_support_state.ventilated_at_zero", r"ventilated\b|beatmet|intubated|intubiert|mechanical ventilation"),
+    ("pre_support_state.acute_renal_failure", r"(acute|akute\w*) (kidney|renal) (failure|injury)|(kidney|renal) failure|(akutes )?nierenversagen|\baki\b|\banv\b"),
+    ("pre_support_state.liver_failure", r"(liver|hepatic) (failure|dysfunction)|leberversagen"),
+    ("pre_support_state.cns_dysfunction", r"\b(cns|zns)\b( (dysfunction|problem))?|neurolog\w*"),
+    ("pre_support_state.confusion_at_presentation", r"confus\w*|verwirrt\w*"),
+    ("pre_support_state.on_rrt_at_zero", rf"(rrt|renal replacement|nierenersatz\w*|dialys\w*) {_BEFORE}"),
+    ("pre_support_state.support_device_before", rf"(device|balloon|pump) {_BEFORE}"),
+    ("pre_support_state.lv_function", r"lv[- ]?fun[ck]tion"),
+    ("arrest_episode.low_flow_min", r"low[- ]?flow( (min\w*|time|duration))?|(minutes|min|duration|dauer)( of| der)? (cpr|reanimation)|cpr (min\w*|duration|time|dauer)|reanimations ?-?(dauer|zeit)"),
+    ("arrest_episode.no_flow_min", r"no[- ]?flow( (min\w*|time|duration))?"),
+    ("arrest_episode.arrest_onset", r"time of arrest|arrest (time|onset)|collapse|kollaps"),
+    ("arrest_episode.witnessed", r"witness\w*|beobachtet\w*"),
+    ("arrest_episode.bystander_cpr", r"bystander\w*( cpr)?|laien ?-?reanimation"),
+    ("arrest_episode.first_rhythm", r"(first |initial |erster )?rhythm\w*"),
+    ("arrest_episode.rosc_before_pump", r"\brosc\b"),
+    ("cannulation.arterial_return", r"return( cannula)?( site)?|rueckgabe\w*|arterial (cannula|access|return)( site)?|arterielle kanuele"),
+    ("cannulation.leg_cannula", r"(leg|limb|distal) (perfusion|cannula)( cannula)?|beinperfusion\w*"),
+    ("cannulation.right_sided_monitoring", r"right[- ](radial|arm|sided)\b.*|radialis rechts|rechte .*radialis"),
+    ("cannulation.unloading_at_start", r"unload\w*|\bvent(ing)?\b|lv-?entlastung"),
+    ("cannulation.technique", r"techni(que|k)\b|per[ck]utan\w*"),
+    ("hospital_outcome.discharge", r"(hospital )?discharge( (date|time))?|entlass\w*"),
+    ("hospital_outcome.icu_discharge", r"icu discharge|discharge from icu|(its|intensiv)[- ]?entlass\w*"),
+    ("hospital_outcome.is_alive_at_discharge", r"alive( at (hospital )?discharge)?|survived( to discharge)?|lebend( entlassen)?|hospital survival|(died|death) in hospital|in-?hospital (death|mortality)|im haus verstorben|survivor"),
+    ("hospital_outcome.discharge_to", r"discharged? (to|destination)|entlassungsziel|entlassen nach|verlegt nach"),
+    ("hospital_outcome.rrt_at_discharge", r"(dialysis|rrt) at discharge"),
+    ("follow_up.contact", r"last (seen|contact|visit|known alive)|letzte[rs]? (kontakt|besuch)|follow[- ]?up( date)?|zuletzt gesehen|nachsorge\w*"),
+    ("follow_up.vital_status", r"(dead|alive) at last (seen|contact|visit)|\bdead\b|deceased|\bdied\b|verstorben|vital ?status|\btot\b"),
+    ("follow_up.death", r"(date|day) of death|death date|sterbe(datum|tag)|todes(datum|tag)|died on|verstorben am|^death$|^died$"),
+    ("follow_up.contact_kind", r"(kind|type) of contact|contact (kind|type)|kontaktart"),
+    ("neuro_outcome.cpc", r"\bcpc\b"),
+    ("neuro_outcome.mrs", r"\bmrs\b|rankin"),
+    ("complication_event.kind", r"complication\w*( (kind|type|code))?|komplikation\w*|adverse event|\bevent\b( (kind|type|code))?|ereignis\w*"),
+    ("complication_event.onset", _WHEN),
+    ("complication_event.resolved", r"resolved|behoben|until|\bbis\b"),
+    ("complication_event.grade", r"severity|schwere\w*|\bgrade?\b"),
+    ("complication_event.consequence", r"consequence|\bfolgen?\b"),
+    ("weaning_step.study", rf"study|{_WHEN}"),
+    ("weaning_step.flow_l_min", r"(pump |blood |trial )?flow|fluss"),
+    ("weaning_step.map_mmhg", r"\bmap\b|mean (arterial )?pressure|mitteldruck"),
+    ("weaning_step.cvp_mmhg", r"\bcvp\b|\bzvd\b"),
+    ("weaning_step.lvef_percent", r"\b(lv ?)?ef\b|ejection( fraction)?"),
+    ("weaning_step.lvot_vti_cm", r"(lvot[- ]?)?vti\b"),
+    ("weaning_step.lateral_s_prime_cm_s", r"(lateral )?(\bs'|s[- ]prime)"),
+    ("weaning_step.result", r"\bresult\b|ergebnis|passed|bestanden"),
+    ("support_setting.at", _WHEN),
+    ("support_setting.blood_flow_l_min", r"(pump |blood )?flow|fluss"),
+    ("support_setting.pump_speed_per_min", r"\brpm\b|(pump )?speed|drehzahl"),
+    ("support_setting.fresh_gas_flow_l_min", r"(sweep|gas)[- ]?(flow|fluss)|\bsweep\b"),
+    ("support_setting.gas_o2_fraction", r"\bfdo2\b|(gas|sweep) (fi)?o2"),
+    ("support_setting.drainage_pressure_mmhg", r"drainage pressure|\bpven\b"),
+    ("support_setting.pre_oxygenator_pressure_mmhg", r"pre[- ]?oxy\w*( pressure)?"),
+    ("support_setting.post_oxygenator_pressure_mmhg", r"post[- ]?oxy\w*( pressure)?"),
+    ("support_setting.arterial_pulsatility_mmhg", r"pulsatil\w*|pulse pressure"),
+    ("circuit_configuration.config", r"config\w*|konfiguration"),
+    ("circuit_configuration.from", _FROM),
+    ("circuit_configuration.to", _TO),
+    ("cannula.role", r"\brole\b|\brolle\b|\bcannula\b|kanuele"),
+    ("cannula.side", r"\bside\b|\bseite\b"),
+    ("cannula.size_fr", r"\bsize\b|\bfr\b|french|charr\w*|kanuelengroesse"),
+    ("cannula.placed", r"placed|inserted|\bgelegt\b"),
+    ("cannula.removed", r"removed|entfernt"),
+    ("lv_unloading_episode.strategy", r"unloading (strategy|device|kind)|strategy|verfahren"),
+    ("lv_unloading_episode.intent", r"\bintent\b|absicht"),
+    ("lv_unloading_episode.from", _FROM),
+    ("lv_unloading_episode.to", _TO),
+)  # fmt: skip

@@ -15,6 +15,7 @@ from outcomes.intake.mapping_sheet import read_sheet
 from outcomes.intake.mapping_source import read_source
 
 UNSETTLED = "?"
+_OWN_WORDS = re.compile(r"\.header$|\.(missing|leave_out|columns|join)\[\d+\]$")
 KEY = re.compile(r"[a-z][a-z0-9_]{0,23}")
 _ENCODINGS = ("utf-8", "utf-8-sig", "cp1252", "latin-1", "utf-16")
 _SEPARATORS = (",", ";", "\t", "|")
@@ -48,8 +49,13 @@ def read_mapping(text: str) -> Mapping:
     return Mapping(source, files, hashlib.sha256(text.encode("utf-8")).hexdigest())
 
 
+def unsettled(raw: dict[str, Any]) -> list[str]:
+    """Dotted places of the marks of a draft. A header, or a word for a missing value, may itself be a question mark."""
+    return sorted(p for p in _places(raw, "", lambda v: v == UNSETTLED) if not _OWN_WORDS.search(p))
+
+
 def _refuse_unsettled(raw: dict[str, Any]) -> None:
-    places = sorted(_places(raw, "", lambda v: v == UNSETTLED))
+    places = unsettled(raw)
     if places:
         shown = ", ".join(places[:20]) + (f" and {len(places) - 20} more" if len(places) > 20 else "")
         raise UsageError(

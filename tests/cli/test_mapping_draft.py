@@ -1,142 +1,149 @@
-"""The draft of a mapping: what it proposes, what it leaves open, and that no value of a cell gets into it."""
+"""The draft of a mapping as a whole: valid, refused until settled, accepted then, the same for the same file."""
 
 from __future__ import annotations
 
-import csv
-import io
-import random
-import re
+import os
+import subprocess
+import sys
 import tomllib
+from pathlib import Path
 
-import openpyxl
 import pytest
+from draft_made import RUNS, as_csv, as_workbook, columns, draft, rows, said, settled, sheets, with_columns
 
-from outcomes.errors import UsageError
+from outcomes.cli import main
+from outcomes.errors import DataRefused, UsageError
 from outcomes.intake.draft import draft_mapping
-from outcomes.intake.mapping_file import read_mapping
+from outcomes.intake.mapping_file import read_mapping, unsettled
 
-HEADERS = [
-    "Run no", "Record no", "Name", "DOB", "Sex", "Weight kg", "Flow on", "Flow off", "How support ended", "Lactate", "BP",
-    "stroke - first onset", "Remarks", "Ward",
-]  # fmt: skip
-SECRETS = ("Eichelhart", "Zaunkoenig", "wrote to", "7654321", "1951", "kept by the aunt", "Sondercode")
-
-
-def _rows(n: int = 60) -> list[list[str]]:
-    source = random.Random(4)
-    rows = []
-    for i in range(n):
-        day = 1 + i % 28
-        rows.append([
-            f"R{i:03d}", str(7654000 + 321 + i), "Eichelhart Zaunkoenig", f"03/{day:02d}/1951", "MF"[i % 2], str(60 + i % 30),
-            f"04/{day:02d}/2023 08:15 AM", f"05/{day:02d}/2023 09:30 PM", ["weaned", "died on support"][i % 2] if i else "Sondercode",
-            f"{source.uniform(20, 90):.1f}", f"{90 + i % 9}/{50 + i % 7}", f"04/{day:02d}/2023 11:00 AM" if i % 9 == 0 else "",
-            f"wrote to the aunt {i}", f"kept by the aunt {i}",
-        ])  # fmt: skip
-    return rows
-
-
-def _csv(rows: list[list[str]], headers: list[str] = HEADERS) -> bytes:
-    buffer = io.StringIO()
-    csv.writer(buffer, lineterminator="\n").writerows([headers, *rows])
-    return buffer.getvalue().encode("utf-8")
-
-
-def _columns(text: str) -> dict[str, dict[str, object]]:
-    body = tomllib.loads(text)
-    return {c["header"]: c for f in body["file"] for s in f["sheet"] for c in s.get("column", [])}
-
-
-def test_fields_patterns_and_codes_are_proposed_with_their_evidence() -> None:
-    text, _ = draft_mapping([_csv(_rows())], "made")
-    made = _columns(text)
-    assert made["DOB"]["field"] == "person.birth_date"
-    assert made["DOB"]["pattern"] == "MM/DD/YYYY"
-    assert made["Flow on"]["pattern"] == "MM/DD/YYYY hh:mm AM"
-    assert made["Sex"]["codes"] == {"F": "female", "M": "male"}
-    assert made["How support ended"]["codes"] == {"weaned": "recovery", "died on support": "death"}
-    assert made["stroke - first onset"]["field"] == "complication.stroke"
-    assert made["BP"]["split"] == "/"
-    assert re.search(r"values have a second part above 12", text)
-
-
-def test_a_unit_that_the_header_does_not_say_is_guessed_with_its_evidence_and_a_contradicted_one_is_left_open() -> None:
-    made = _columns(draft_mapping([_csv(_rows())], "made")[0])
-    assert made["Lactate"]["unit"] == "mg/dL"
-    headers = ["Lactate mmol/L" if h == "Lactate" else h for h in HEADERS]
-    text, _ = draft_mapping([_csv(_rows(), headers)], "made")
-    assert _columns(text)["Lactate mmol/L"]["unit"] == "?"
-    assert "the header says mmol/L" in text
-
-
-def test_day_or_month_first_is_left_open_when_no_value_proves_it() -> None:
-    rows = [[*r[:3], "03/04/1951", *r[4:]] for r in _rows()]
-    assert _columns(draft_mapping([_csv(rows)], "made")[0])["DOB"]["pattern"] == "?"
-
-
-def test_no_value_of_a_cell_is_in_the_draft() -> None:
-    text, _ = draft_mapping([_csv(_rows())], "made")
-    for secret in SECRETS:
-        assert secret not in text
-    assert "1 x Aaaaaaaaaa" in text
-
-
-def test_private_columns_stay_out_and_keys_are_recognised() -> None:
-    sheet = tomllib.loads(draft_mapping([_csv(_rows())], "made")[0])["file"][0]["sheet"][0]
-    assert sheet["leave_out"] == ["Name", "Remarks"]
-    assert sheet["run"] == ["Run no"]
-    assert sheet["person"] == ["Record no"]
+RUN_FILE = as_csv(RUNS, rows())
 
 
 def test_a_draft_is_refused_until_every_mark_is_settled_and_accepted_then() -> None:
-    text, marks = draft_mapping([_csv(_rows())], "made")
-    assert marks == text.count('"?"') > 15
+    text, marks = draft_mapping([RUN_FILE], "made")
+    assert marks == text.count('"?"') == len(unsettled(tomllib.loads(text))) > 15
+    assert f"{marks} questions are open." in text
     with pytest.raises(UsageError) as refused:
         read_mapping(text)
     assert refused.value.code == "MAPPING.UNSETTLED"
-    mapping = read_mapping(_settled(text))
+    mapping = read_mapping(settled(text))
     assert mapping.source.key == "made"
-    assert "complication.stroke" in mapping.carried_fields
+    assert {"complication.stroke", "measurement.sbp", "support_end.kind"} <= mapping.carried_fields
 
 
-def _settled(text: str) -> str:
-    answers = {
-        "identifiers": '"made"', "period": "[2023-01-01, 2023-12-31]", "extract_date": "2024-03-31", "extent": '"whole"',
-        "time_zone": '"Europe/Vienna"', "plan_written": '"unknown"', "vital_status_checked": "2024-03-31",
-        "vital_status_date": '"day of death"', "no_death_means": '"unknown"', "attempts": '"not in this source"',
-        "calendar": '"keep"', "events_kept": '"first"', "looked_until_hours_after_end": "0", "definition": '"our own"',
-        "valid_from_year": "2023", "window": '"pre_undated"', "means": '"not recorded"', "field": '"complication_event.grade"',
-    }  # fmt: skip
-    for key, answer in answers.items():
-        text = re.sub(rf'^{key} = "\?"$', f"{key} = {answer}", text, flags=re.MULTILINE)
-    text = text.replace('fields = ["?", "?"]', 'fields = ["measurement.sbp", "measurement.dbp"]\nunit = "mm[Hg]"\nreading = "bp"')
-    return re.sub(r'^unit = "\?"$', 'unit = "mg/dL"', text, flags=re.MULTILINE)
+def test_nothing_that_no_value_shows_is_answered() -> None:
+    source = tomllib.loads(draft(RUN_FILE))["source"]
+    complication = source.pop("complication")[0]
+    assert source.pop("key") == "made"
+    assert len(source) == 11 and set(source.values()) == {"?"}
+    assert complication.pop("kinds") == ["stroke"]
+    assert set(complication.values()) == {"?"} and len(complication) == 4
 
 
-@pytest.mark.parametrize("header", ['He said "no"', "back\\slash", "Größe = ?", "[file]", "#", "{{x}}", "ключ"])
-def test_any_header_gives_valid_toml(header: str) -> None:
-    headers = [*HEADERS[:-1], header]
-    text, _ = draft_mapping([_csv(_rows(), headers)], "made")
-    assert header in _columns(text) or header in tomllib.loads(text)["file"][0]["sheet"][0]["leave_out"]
+def test_every_question_has_a_comment_above_it() -> None:
+    lines = draft(RUN_FILE).splitlines()
+    asked = [i for i, line in enumerate(lines) if line.endswith('= "?"')]
+    assert asked and all(lines[i - 1].startswith("# ") for i in asked)
 
 
-def test_the_same_file_gives_the_same_draft() -> None:
-    assert draft_mapping([_csv(_rows())], "made") == draft_mapping([_csv(_rows())], "made")
+def test_every_column_of_the_file_has_its_place() -> None:
+    data = with_columns({"Ward": ["north", "south"] * 30, "Free": [f"he went home and came back {i}" for i in range(60)], "Empty": [""] * 60})
+    sheet = read_mapping(settled(draft(data), {"field": '"complication_event.grade"'})).files[0].sheets[0]
+    assert sheet.listed == {*RUNS, "Ward", "Free", "Empty"}
 
 
-def test_a_code_sheet_becomes_two_lists_and_its_columns_use_them(tmp_path) -> None:
-    book = openpyxl.Workbook()
-    runs = book.active
-    runs.append(["Run no", "Record no", "How ended"])
-    for i in range(40):
-        runs.append([f"R{i}", f"P{i}", 1 + i % 3])
-    codes = book.create_sheet("codes")
-    for row in (["code", "meaning"], [1, "weaned"], [2, "died on support"], [3, "LVAD"], [None, None], [1, "myocarditis"], [2, "arrest"]):
-        codes.append(row)
-    book.save(tmp_path / "b.xlsx")
-    text, _ = draft_mapping([(tmp_path / "b.xlsx").read_bytes()], "made")
-    sheets = tomllib.loads(text)["file"][0]["sheet"]
-    assert [s["rows"] for s in sheets if s["row_is"] == "code list"] == [[2, 4], [6, 7]]
-    ended = _columns(text)["How ended"]
-    assert ended["codes_from"] == "sheet2_list1"
-    assert ended["codes"] == {"weaned": "recovery", "died on support": "death", "LVAD": "durable_lvad"}
+def test_blank_cells_are_asked_once_a_group_and_full_columns_together() -> None:
+    many = {f"{kind} - first onset": ["04/15/2023 11:00 AM", ""] * 30 for kind in ("haemolysis", "limb ischaemia")}
+    data = with_columns({**many, "Creatinine mg/dL": ["1.5", "2.5", ""] * 20, "Platelets K/uL": ["110", "", "150"] * 20})
+    groups = [set(g["columns"]) for g in sheets(draft(data))[0]["blank"]]
+    assert {"haemolysis - first onset", "limb ischaemia - first onset", "stroke - first onset"} in groups
+    assert {"Creatinine mg/dL", "Platelets K/uL"} in groups
+    assert groups[-1] == {"DOB", "Sex", "Weight kg", "Flow on", "Flow off", "How support ended", "Lactate", "BP"}
+    assert sum(map(len, groups)) == len(set().union(*groups))
+
+
+def test_an_end_that_may_still_be_open_is_a_group_of_its_own() -> None:
+    data = with_columns({"Flow off": ["05/13/2023 09:30 PM", ""] * 30, "CPC": ["1", "2", ""] * 20})
+    groups = {tuple(g["columns"]) for g in sheets(draft(data))[0]["blank"]}
+    assert ("Flow off",) in groups and ("CPC",) in groups
+    assert "still on support" in said(draft(data))
+
+
+HOSTILE = ['He said "no"', "back\\slash", "Größe = ?", "?", "[file]", "#", "{{x}}", "ключ", "a\nb", "t\tab", "'''", '"""', "codes = 1", "\u00a0b", "x\u00adx"]  # fmt: skip
+
+
+@pytest.mark.parametrize("header", HOSTILE)
+@pytest.mark.parametrize("cells", [["7", "8"], ["", ""], ["\"", "#"]])
+def test_any_header_gives_valid_toml_and_can_be_settled(header: str, cells: list[str]) -> None:
+    text = draft(with_columns({header: cells * 30}))
+    tomllib.loads(text)
+    answers = {"field": '"neuro_outcome.cpc"', "unit": '"cm"', "BP.unit": '"mm[Hg]"'}
+    assert header.strip() in read_mapping(settled(text, answers)).files[0].sheets[0].listed
+
+
+def test_the_same_file_gives_the_same_draft_whatever_the_hash_seed() -> None:
+    code = (
+        "import sys; sys.path.insert(0, 'tests/cli'); from draft_made import RUNS, as_csv, draft, rows;"
+        "print(draft(as_csv(RUNS, rows()), as_csv(RUNS, rows(30))))"
+    )
+    root = Path(__file__).parents[2]
+    printed = [
+        subprocess.run(
+            [sys.executable, "-c", code], cwd=root, capture_output=True, check=True,
+            env={**os.environ, "PYTHONHASHSEED": seed, "PYTHONPATH": str(root)},
+        ).stdout
+        for seed in ("1", "2")
+    ]  # fmt: skip
+    assert printed[0] == printed[1] and len(printed[0]) > 3000
+
+
+def test_a_table_that_cannot_be_read_is_named_and_left_out() -> None:
+    data = as_workbook([RUNS, *rows()], [["How to use this book"], [], ["a", "a", "b"], ["c", "c", "d"]], [["run", "why"]])
+    text = draft(data)
+    assert [s["position"] for s in sheets(text)] == [1]
+    assert "Sheet 2 is left out: it cannot be read as a table (READ.HEADER-TWIN)" in said(text)
+    assert "Sheet 3 is left out: it holds no rows" in said(text)
+
+
+def test_a_key_that_cannot_be_one_and_a_file_without_headers_are_refused() -> None:
+    with pytest.raises(UsageError) as refused:
+        draft_mapping([RUN_FILE], "North ward")
+    assert refused.value.code == "MAPPING.KEY"
+    body = [[f"name{i % 7}", ["one", "two"][i % 2], ["left", "right"][i % 2]] for i in range(30) if i % 7 or i == 0]
+    with pytest.raises(DataRefused) as stopped:
+        draft(as_csv(body[0], body[1:]))
+    assert stopped.value.code == "DRAFT.HEADER"
+    assert "name0" not in str(stopped.value)
+
+
+def test_a_question_mark_may_be_a_word_for_a_missing_value() -> None:
+    text = draft(with_columns({"Creatinine mg/dL": ["1.5", "?", "2.5"] * 20}))
+    assert tomllib.loads(text)["file"][0]["missing"] == ["?"]
+    read_mapping(settled(text))
+
+
+def test_the_command_writes_a_draft_once_and_says_how_many_questions(tmp_path: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    source, target = tmp_path / "runs.csv", tmp_path / "made.toml"
+    source.write_bytes(RUN_FILE)
+    asked = ["mapping", "draft", str(source), "--key", "made", "--out", str(target)]
+    assert main(asked) == 0
+    text, marks = draft_mapping([RUN_FILE], "made")
+    assert target.read_text(encoding="utf-8") == text
+    assert target.stat().st_mode & 0o777 == 0o600
+    assert f"{marks} questions" in capsys.readouterr().out
+    assert main(asked) == 2
+    assert main(["mapping", "check", str(target)]) == 2
+    assert "MAPPING.UNSETTLED" in capsys.readouterr().err
+    target.write_text(settled(text), encoding="utf-8")
+    assert main(["mapping", "check", str(target)]) == 0
+
+
+def test_the_form_of_the_file_is_written_with_its_evidence() -> None:
+    body = [[f"R{i}", "Größe", f"{i},5"] for i in range(30)]
+    text = draft(as_csv(["Run no", "Ort", "Gewicht kg"], body, ";").decode().encode("cp1252"))
+    file = tomllib.loads(text)["file"][0]
+    assert (file["kind"], file["encoding"], file["separator"], file["decimal_mark"]) == ("csv", "cp1252", ";", ",")
+    assert "guessed: line 2 is not valid UTF-8" in said(text) and "guessed: 3 cells in 31 of 31 lines" in said(text)
+    wide = as_csv(RUNS, rows()).decode().encode("utf-16")
+    assert tomllib.loads(draft(wide))["file"][0]["encoding"] == "utf-16"
+    assert columns(draft(wide)) == columns(draft(RUN_FILE))
