@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import pandas as pd
 
 from outcomes.analysis.result import Caution, Result
@@ -106,7 +108,7 @@ _SPECIAL = {
 }
 
 
-def _cannot_tell(audit: Audit) -> tuple[list[dict[str, object]], tuple[Caution, ...]]:
+def _cannot_tell(audit: Audit) -> tuple[list[dict[str, Any]], tuple[Caution, ...]]:
     """Lines for what an audit must name: later runs, open runs, transfers, attempts, people without a first run."""
     run = audit.current.run
     later = run[~run["is_first_run"]]

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from typing import Any
+
 import numpy as np
 import pandas as pd
 
@@ -10,7 +12,7 @@ from outcomes.analysis.rates import proportion
 from outcomes.analysis.result import Result, tidy
 from outcomes.cohort.frames import Cohort
 from outcomes.errors import NotEstimable
-from outcomes.study.answer import Answer, ColumnOf, FigureOf, RowOf, TableOf
+from outcomes.study.answer import Answer, ColumnOf, FigureOf, RowOf, RunList, TableOf
 from outcomes.study.audit_data import Audit
 from outcomes.study.shape import CAUSES, DAY, ENDINGS, cause_codes, counted, rows_of, run_list, slug
 
@@ -38,7 +40,7 @@ def endings(audit: Audit, days: list[float], end: float) -> Answer:
     apart = ending_incidence(cohort.ending, days, transfer_competes=True)
     counts, lists = _counts(cohort)
     labels = {k: v for k, v in ENDINGS.items()}
-    shown = {
+    shown: dict[str, Any] = {
         "results": {"curve": "curve", "ticks": "ticks"},
         "labels": labels,
         "words": WORDS,
@@ -74,9 +76,10 @@ def endings(audit: Audit, days: list[float], end: float) -> Answer:
 _LINES = (*CAUSES, "transfer out", "still on support")
 
 
-def _counts(cohort: Cohort) -> tuple[Result, dict[str, object]]:
+def _counts(cohort: Cohort) -> tuple[Result, dict[str, RunList]]:
     run = cohort.run
-    rows, lists = [], {}
+    rows: list[dict[str, object]] = []
+    lists: dict[str, RunList] = {}
     for name in _LINES:
         inside = run[run["pathway"] == name]
         known = inside["is_alive_at_discharge"].notna()
@@ -116,7 +119,7 @@ def _fate(part: pd.DataFrame) -> dict[str, object]:
     )
 
 
-def _count_table(counts: Result, lists: dict[str, object]) -> TableOf:
+def _count_table(counts: Result, lists: dict[str, RunList]) -> TableOf:
     labels = {**ENDINGS, "transfer out": "transferred out", "still on support": "still on support",
               "death on support": "of these: died on support", "support withdrawn": "of these: support withdrawn"}  # fmt: skip
     order = ["recovery", "durable LVAD", "transplantation", "death or withdrawal", "death on support", "support withdrawn",
