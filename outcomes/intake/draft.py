@@ -96,7 +96,7 @@ def _refuse_data_row(columns: dict[str, list[Cell]], number: int) -> None:
 
 
 def _kinds(sheets: Sequence[DraftSheet]) -> list[str]:
-    """Complication kinds that the proposals lead to; '?' if codes of events are still open."""
+    """Complication kinds that the proposals lead to; '?' if nothing is known of the codes of events."""
     known = vocabulary().lists["complication_kind"]
     kinds: set[str] = set()
     for made in (p for sheet in sheets for p in kept(sheet)):
@@ -104,5 +104,9 @@ def _kinds(sheets: Sequence[DraftSheet]) -> list[str]:
             kinds.add(made.target.split(".")[1])
         codes = made.values.get("codes")
         if made.target == "complication_event.kind":
-            kinds |= set(codes.values()) & (known | {OPEN}) if isinstance(codes, dict) else {OPEN}
+            kinds |= (
+                set(codes.values()) & (known | {OPEN})
+                if isinstance(codes, dict)
+                else set(made.likely or [OPEN])
+            )
     return sorted(kinds)

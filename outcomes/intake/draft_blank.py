@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 
-from outcomes.intake.draft_column import Proposal
+from outcomes.intake.draft_proposal import Proposal
 from outcomes.intake.draft_sheet import targets_of
 
 # (question, beginnings of the fields). The first group that fits a column takes it.

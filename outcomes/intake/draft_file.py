@@ -7,7 +7,7 @@ from collections.abc import Sequence
 
 from outcomes.intake.draft_blank import blank_groups
 from outcomes.intake.draft_codes import OPEN
-from outcomes.intake.draft_column import Proposal
+from outcomes.intake.draft_proposal import Proposal
 from outcomes.intake.draft_role import DraftSheet, list_key
 from outcomes.intake.draft_sheet import is_windowed, kept
 from outcomes.intake.draft_text import column_lines, comment, entry

@@ -36,6 +36,7 @@ class Profile:
     missing    words of MISSING that stand in the column
     others     shapes of cells that are not of this kind, with counts
     codes      code -> count, only those that may be shown, joined where they differ by capitals
+    hidden     why no code may be shown, '' if they may; folds: some differ by capitals only
     rare       shapes of codes seen fewer than five times, with counts
     quartiles  of at least ten numbers, exact; `quartile_words` rounds them. parts: the same for both parts of a split
     """
@@ -49,6 +50,7 @@ class Profile:
     codes: dict[str, int] = field(default_factory=dict)
     rare: tuple[str, ...] = ()
     folds: bool = False
+    hidden: str = ""
     marks: Marks = field(default_factory=Marks)
     quartiles: tuple[float, float, float] | None = None
     n_numbers: int = 0
@@ -154,10 +156,21 @@ def caught(text: str) -> bool:
     return bool(_SCAN.search(text))
 
 
+def _why_hidden(made: Profile, counts: Counter[str]) -> str:
+    """Why no code of the column may be shown, '' if they may."""
+    if not counts:
+        return "the column is empty"
+    if any(caught(code) for code in counts):
+        return "some look as if they named a person, a date or a number"
+    if made.n_distinct > MOST_CODES or (made.n_distinct > 12 and made.distinct_share >= 0.2):
+        return "they are too many"
+    return f"some are longer than {LONGEST_CODE} characters" if max(map(len, counts)) > LONGEST_CODE else ""
+
+
 def _codes(made: Profile, counts: Counter[str]) -> None:
     """Codes may be shown only if there are few, short, frequent ones and none looks like a person's."""
-    few = made.n_distinct <= MOST_CODES and (made.n_distinct <= 12 or made.distinct_share < 0.2)
-    if not counts or not few or any(len(c) > LONGEST_CODE or caught(c) for c in counts):
+    made.hidden = _why_hidden(made, counts)
+    if made.hidden:
         return
     groups: dict[str, Counter[str]] = {}
     for word, n in counts.items():
@@ -166,9 +179,10 @@ def _codes(made: Profile, counts: Counter[str]) -> None:
     rare = []
     for folded, spellings in sorted(groups.items()):
         commonest = max(spellings, key=lambda w: (spellings[w], w))
-        if spellings.total() >= FEWEST_SEEN:
-            made.codes[commonest if spellings[commonest] >= FEWEST_SEEN else folded] = spellings.total()
-        elif folded not in {word.lower() for word in MISSING}:
+        if spellings.total() >= FEWEST_SEEN or commonest in MISSING:
+            often = spellings[commonest] >= FEWEST_SEEN or commonest in MISSING
+            made.codes[commonest if often else folded] = spellings.total()
+        else:
             rare.append((commonest, spellings.total()))
     made.rare = _shapes(rare)
 

@@ -7,9 +7,9 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from outcomes.intake.draft_codes import OPEN
-from outcomes.intake.draft_column import CodeList, Proposal
 from outcomes.intake.draft_match import complication_in, is_private, matches, settled, subject_of
 from outcomes.intake.draft_profile import Profile, caught, cell_word
+from outcomes.intake.draft_proposal import CodeList, Proposal
 from outcomes.intake.draft_words import plain
 from outcomes.intake.reading.grid import Cell
 from outcomes.intake.reading.outline import SheetOutline

@@ -6,9 +6,10 @@ import re
 from collections.abc import Sequence
 
 from outcomes.intake.draft_codes import OPEN
-from outcomes.intake.draft_column import CodeList, Proposal, propose
+from outcomes.intake.draft_column import propose
 from outcomes.intake.draft_number import number_of
 from outcomes.intake.draft_profile import cell_word
+from outcomes.intake.draft_proposal import CodeList, Proposal
 from outcomes.intake.draft_role import DraftSheet
 from outcomes.intake.draft_words import plain
 from outcomes.intake.vocabulary import vocabulary

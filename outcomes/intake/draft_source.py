@@ -37,7 +37,9 @@ def complication_lines(kinds: Sequence[str]) -> list[str]:
     """One block for all kinds found; none if the source has no complications."""
     if not kinds:
         return []
-    unknown = ["# Put every kind that the codes below lead to into this list."]
+    unknown = [
+        "# Every kind that the codes below lead to stands in this list; the question mark is for those still open."
+    ]
     return [
         "",
         "# What the source means by its complications. If the answers differ by kind, or a definition changed in some year,",

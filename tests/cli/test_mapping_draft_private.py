@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import random
+import tomllib
 
 import pytest
-from draft_made import as_workbook, columns, draft, rows, said, sheets, with_columns
+from draft_made import RUNS, as_csv, as_workbook, columns, draft, rows, said, sheets, with_columns
 
 from outcomes.findings import shape_of
 
@@ -99,3 +100,26 @@ def test_the_values_of_the_made_file_are_nowhere_but_as_codes() -> None:
     allowed = {"M", "F", "weaned", "died on support"}
     cells = {cell for row in rows() for cell in row if len(cell) > 3} - allowed
     assert not [cell for cell in cells if cell in text]
+
+
+def test_hidden_codes_are_described_by_what_they_are_likely_to_mean() -> None:
+    kinds = ["bleeding at the cannulation site", "stroke", "an event that nobody knows"]
+    events = as_csv(["Run no", "When", "Event"], [[f"R{i % 20:03d}", "04/15/2023", kinds[i % 3]] for i in range(60)])
+    text = draft(as_csv(RUNS, rows()), events)
+    assert columns(text)["Event"]["codes"] == "?"
+    assert "some are longer than 24 characters" in said(text)
+    assert "likely to mean: bleeding_cannulation_site, stroke " in said(text)
+    assert not any(f'"{kind}"' in text for kind in kinds if kind != "stroke") and "bleeding at the" not in text
+    assert tomllib.loads(text)["source"]["complication"][0]["kinds"] == ["bleeding_cannulation_site", "stroke"]
+
+
+def test_known_words_for_missing_are_shown_however_rare() -> None:
+    made = columns(draft(with_columns({"Sex": _many("M", "F", rare="unk", times=2)})))["Sex"]
+    assert made["codes"] == {"F": "female", "M": "male", "unk": "not recorded"}
+
+
+def test_codes_of_a_column_without_a_field_are_shown_only_if_they_say_nothing() -> None:
+    text = draft(with_columns({"Seen by": ["Moorwall", "Ahorn"] * 30, "Flagged": ["Yes", "No"] * 30}))
+    assert columns(text)["Seen by"] == {"header": "Seen by", "field": "?"}
+    assert "Moorwall" not in text and "it holds 2 different codes" in said(text)
+    assert 'codes = { "No" = ..., "Yes" = ... }' in said(text)
