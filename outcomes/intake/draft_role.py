@@ -57,6 +57,7 @@ def assign_roles(sheets: Sequence[DraftSheet]) -> None:
     main = max(tables, key=_run_fields, default=None)
     if main is not None:
         _name_keys(main)
+        _stand_alone(main)
     for sheet in sheets:
         if sheet is main:
             continue
@@ -150,10 +151,31 @@ def _follow(sheet: DraftSheet, main: DraftSheet | None) -> None:
         return
     if sheet.profiles[sheet.run].distinct_share >= 1:
         sheet.row_is = "run"
-    elif _holds_events(sheet):
+    else:
+        _several_a_run(sheet)
+
+
+def _several_a_run(sheet: DraftSheet) -> None:
+    if _holds_events(sheet):
         sheet.row_is = "event"
     else:
         sheet.row_is, sheet.subject = "detail", subject_of(list(sheet.columns))
+
+
+def _stand_alone(main: DraftSheet) -> None:
+    """Files of events or details may come without their runs: the run column then repeats, and no start is given."""
+    if main.run != OPEN or any(
+        m.field == "support_run.start" for h in main.columns for m in matches(h, "run")
+    ):
+        return
+    named = [
+        h for h, p in main.profiles.items()
+        if _RUN.search(plain(h)) and p.kind in ("number", "text") and p.n_blank == 0 and p.distinct_share < _RUN_SHARE
+    ]  # fmt: skip
+    if len(named) == 1 and not main.outline.is_code_list:
+        main.run, main.person = named[0], ""
+        main.run_why = f"the runs themselves must be known from elsewhere; {share_words(main, named[0])}"
+        _several_a_run(main)
 
 
 def _overlap(cells: list[Cell], known: set[str]) -> float:

@@ -30,7 +30,7 @@ _STATED: tuple[tuple[str, tuple[str, ...]], ...] = (
 
 def stated_unit(header: str, units: dict[str, Conversion]) -> tuple[str, str]:
     """(unit of the quantity that the header states, the words if they are a unit that the quantity does not know)."""
-    text = plain(header)
+    text = re.sub(r"\b([um]?mol|m?g|u?g|meq)(?: per | )(?=(?:d|u)?l\b)", r"\1/", plain(header))
     mol = re.search(r"\b(m|u)mol/l", text)
     if mol:
         name = f"{mol[1]}mol/L"

@@ -154,3 +154,15 @@ def test_events_in_a_file_of_their_own_follow_the_runs() -> None:
     assert [(s["key"], s["row_is"]) for s in sheets(text)] == [("file1_sheet1", "run"), ("file2_sheet1", "event")]
     strangers = as_csv(["Nr", "Event", "When"], [["Z9", "haemolysis", "04/15/2023"]] * 40)
     assert [s["row_is"] for s in sheets(draft(as_csv(RUNS, rows()), strangers))] == ["run", "?"]
+
+
+def test_events_without_their_runs() -> None:
+    body = [[f"F{i % 9}", "13.04.2021", "10:15", ["Schlaganfall", "Hämolyse", "Beinischämie"][i % 3], "2"] for i in range(45)]
+    text = draft(as_csv(["Fallnr", "Datum", "Uhrzeit", "Ereignis", "Schwere"], body, ";"))
+    sheet = sheets(text)[0]
+    assert (sheet["row_is"], sheet["run"]) == ("event", ["Fallnr"]) and "person" not in sheet
+    made = columns(text)
+    assert made["Datum"] == {"header": "Datum", "field": "complication_event.onset", "join": ["Uhrzeit"], "pattern": "DD.MM.YYYY HH:mm"}
+    assert made["Ereignis"]["codes"] == {"Beinischämie": "limb_ischaemia", "Hämolyse": "haemolysis", "Schlaganfall": "stroke"}
+    assert "the runs themselves must be known from elsewhere" in said(text)
+    read_mapping(settled(text))

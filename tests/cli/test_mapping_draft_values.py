@@ -61,7 +61,7 @@ def test_a_unit_stays_open_if_two_fit_or_too_few_values_or_a_foreign_one() -> No
         ("Groesse cm", "length", "cm"), ("RR kPa", "pressure", "kPa"), ("Krea µmol/l", "creatinine", "umol/L"), ("Laktat mmol/l", "lactate", "mmol/L"),
         ("PIP cmH2O", "airway_pressure", "cm[H2O]"), ("EF %", "percent", "%"), ("BUN mg/dL", "urea", "mg/dL{urea_nitrogen}"), ("Fluss l/min", "flow", "L/min"),
         ("Minutes of CPR", "time_min", "min"), ("Beatmungsstunden", "time_h", "h"), ("S' cm/s", "velocity", "cm/s"), ("MAP mmHg", "pressure", "mm[Hg]"),
-        ("Lactate", "lactate", ""), ("Time of flow", "time_min", ""), ("Temp °F", "temperature", "[degF]"), ("ALT U/L", "enzyme", "U/L"),
+        ("lactate_mmol_l", "lactate", "mmol/L"), ("Hb g per dL", "haemoglobin", "g/dL"), ("Lactate", "lactate", ""), ("Time of flow", "time_min", ""), ("Temp °F", "temperature", "[degF]"), ("ALT U/L", "enzyme", "U/L"),
     ],
 )  # fmt: skip
 def test_units_of_headers(header: str, quantity: str, unit: str) -> None:
