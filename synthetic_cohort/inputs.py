@@ -83,6 +83,7 @@ def recorded_inputs(inputs: pd.DataFrame, run: pd.DataFrame, seed: int, settings
     for column, share in GAPS.items():
         gap = rng.random(len(out)) < share
         out[column] = out[column].astype(object if out[column].dtype == bool else out[column].dtype).mask(gap)
+    out["egfr_ml_min_1_73m2"] = out["egfr_ml_min_1_73m2"].mask(out["creatinine_admission_umol_l"].isna())
     silent = out["sbp_mmhg"].isna() | (run["is_ecpr"].to_numpy() & (rng.random(len(out)) < 0.6))
     for column in ("sbp_mmhg", "dbp_mmhg", "map_mmhg"):
         out[column] = out[column].mask(silent)

@@ -76,6 +76,7 @@ VALUES = (
     ("O2 sat %", "spo2_percent", 1.0, 0, ""),
     ("Creat mg/dL", "creatinine_umol_l", 1 / 88.4016973125884, 2, "creatinine"),
     ("Creat ED mg/dL", "creatinine_admission_umol_l", 1 / 88.4016973125884, 2, ""),
+    ("GFR est.", "egfr_ml_min_1_73m2", 1.0, 0, ""),
     ("BUN mg/dL", "urea_mmol_l", 1 / 0.356964374955, 0, ""),
     ("T bili mg/dL", "bilirubin_umol_l", 1 / 17.1036653154771, 1, "bilirubin"),
     ("SGPT", "alt_u_l", 1.0, 0, ""),

@@ -119,6 +119,7 @@ _VALUES = (
     ("Anion gap [mmol/L]", "anion_gap_mmol_l", 1.0, 1, ""),
     ("GCS low", "gcs_total", 1.0, 0, ""),
     ("EF [%]", "lvef_percent", 1.0, 0, ""),
+    ("GFR admission", "egfr_ml_min_1_73m2", 1.0, 0, ""),
     ("Urine 24h [mL]", "urine_day_ml", 1.0, 0, ""),
     ("Temp [C]", "temperature_cel", 1.0, 1, ""),
     ("NOR [ug/kg/min]", "noradrenaline_ug_kg_min", 1.0, 2, ""),

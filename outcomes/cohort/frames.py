@@ -44,12 +44,17 @@ _FLAGS = ("died", "had_arrest", "was_ventilated", "transferred_in", "leg_cannula
           "prior_cardiac_surgery", "prior_mi_or_cabg", "aortic_arch_surgery", "preoperative_stroke_or_unconscious", "rhythm_shockable_at_arrival", "plan_is_from_start", "age_topcoded")  # fmt: skip
 
 
+# A column of mart.score_input for one window: the name of the quantity and then the window.
+_ASKED = ("_pre_worst_6h", "_pre_worst_24h", "_hospital_arrival")
+
+
 def kind_of(column: str) -> str:
     """pandas type of a mart column by its name.
 
-    >>> kind_of("end_h"), kind_of("is_open"), kind_of("run_key")
-    ('Float64', 'boolean', 'string')
+    >>> kind_of("end_h"), kind_of("is_open"), kind_of("run_key"), kind_of("gcs_total_pre_worst_24h")
+    ('Float64', 'boolean', 'string', 'Int64')
     """
+    column = next((column.removesuffix(end) for end in _ASKED if column.endswith(end)), column)
     if column in _FLAGS or column.startswith(("is_", "has_", "had_", "was_", "observable_")):
         return "boolean"
     if column in _WHOLE:
@@ -72,8 +77,9 @@ class Cohort:
     """Frames of one store, each at the grain of its mart, and what is needed to say where they came from.
 
     run, ending, survival, score_input: one row a run. complication: run x kind. state: run x stay. flow: source x stage.
-    missing: run x field. carried: (source, field) that a source has at all. batches: one row an import. findings: one
-    row a finding of the ledger. kinds: complication vocabulary with definition and gaps.
+    missing: run x field. score_window: run x quantity x window that a score asks for, where the value is of another
+    time. carried: (source, field) that a source has at all. batches: one row an import. findings: one row a finding of
+    the ledger. kinds: complication vocabulary with definition and gaps.
     """
 
     run: pd.DataFrame
@@ -82,6 +88,7 @@ class Cohort:
     complication: pd.DataFrame
     state: pd.DataFrame
     score_input: pd.DataFrame
+    score_window: pd.DataFrame
     flow: pd.DataFrame
     missing: pd.DataFrame
     set_aside: pd.DataFrame
@@ -102,6 +109,10 @@ _QUERIES: dict[str, tuple[str, tuple[str, ...]]] = {
     "complication": ("select * from mart.complication_count", ("run_key", "kind")),
     "state": ("select * from mart.state_interval", ("run_key", "from_h")),
     "score_input": ("select * from mart.score_input", ("run_key",)),
+    "score_window": (
+        "select run_key, quantity, asked, fit from mart.score_window where fit <> 'own'",
+        ("run_key", "quantity", "asked"),
+    ),
     "flow": ("select * from mart.cohort_flow", ("source_key", "stage_no")),
     "missing": ("select * from record.missing_value", ("run_key", "field")),
     "set_aside": ("select * from record.set_aside_run", ("run_key",)),
@@ -125,7 +136,7 @@ def load_cohort(con: duckdb.DuckDBPyConnection) -> Cohort:
     return Cohort(**frames, batches=batches, findings=findings, fingerprint=str(row[0]) if row else "")
 
 
-_BY_RUN = ("run", "ending", "survival", "complication", "state", "score_input", "missing", "measurement")
+_BY_RUN = ("run", "ending", "survival", "complication", "state", "score_input", "score_window", "missing", "measurement")
 
 
 def select_runs(cohort: Cohort, run_keys: pd.Series) -> Cohort:
