@@ -38,7 +38,7 @@ def main(argv: Sequence[str] | None = None) -> int:
 
 
 def _report_bug(error: Exception, debug: bool) -> None:
-    """Our own mistake. The message of the exception may quote a value, so only its type and the places are shown."""
+    """Our own mistake. The exception may quote a value: only its type and the places are shown."""
     print(f"INTERNAL.BUG: {type(error).__name__}", file=sys.stderr)
     if debug:
         for place in traceback.extract_tb(error.__traceback__):
@@ -87,7 +87,8 @@ def _overview(verbs: dict[str, str]) -> str:
         lines.append(f"  {verb:<12} {first}")
     lines += [
         "",
-        "It informs review and research, never a bedside decision. Add --debug to see where an internal error arose.",
+        "It informs review and research, never a bedside decision. "
+        "Add --debug to see where an internal error arose.",
     ]
     return "\n".join(lines)
 

@@ -1,1 +1,4 @@
-"""One file a verb of the command line: `arguments(parser)` and `run(args)`; found by listing, loaded only when called."""
+"""One file a verb of the command line: `arguments(parser)` and `run(args)`.
+
+Found by listing, loaded only when called.
+"""

@@ -10,10 +10,11 @@ from outcomes.errors import UsageError
 
 
 class Parser(argparse.ArgumentParser):
-    """Usage errors in our form; what was typed is not repeated, because a file name may hold an identifier."""
+    """Usage errors in our form; what was typed is not repeated: a file name may hold an identifier."""
 
     def error(self, message: str) -> NoReturn:
         about = re.match(r"argument [^:]*", message)
         needed = re.match(r"the following arguments are required: .*", message)
-        what = about.group(0) if about else needed.group(0) if needed else "the arguments are not understood"
+        known = about or needed
+        what = known.group(0) if known else "the arguments are not understood"
         raise UsageError("USAGE.ARGUMENTS", what, todo=f"{self.prog} --help")

@@ -1,4 +1,7 @@
-"""What a report says of its own making: versions, code digest, batches, options. No path, user, host or clock."""
+"""What a report says of its own making: versions, code digest, batches, options.
+
+No path, user, host or clock.
+"""
 
 from __future__ import annotations
 
@@ -50,12 +53,13 @@ def provenance(
 ) -> dict[str, str | list[str]]:
     """Label -> lines, in the order of print."""
     batches = [
-        f"batch {row.batch_no}, source {row.source_key}: rows read {row.rows_read}, accepted {row.rows_accepted}, "
-        f"set aside {row.rows_set_aside}, duplicates {row.rows_duplicate}"
+        f"batch {row.batch_no}, source {row.source_key}: rows read {row.rows_read}, "
+        f"accepted {row.rows_accepted}, set aside {row.rows_set_aside}, duplicates {row.rows_duplicate}"
         for row in cohort.batches.itertuples()
     ]
     checked = [
-        f"source {row.source_key}: extract of {_day(row.extract_date)}, vital status checked on {_day(row.vital_status_checked)}"
+        f"source {row.source_key}: extract of {_day(row.extract_date)}, "
+        f"vital status checked on {_day(row.vital_status_checked)}"
         for row in cohort.batches.drop_duplicates("source_key", keep="last").itertuples()
     ]
     versions = [f"{name} {importlib.metadata.version(name)}" for name in _LIBRARIES]

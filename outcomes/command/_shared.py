@@ -1,4 +1,7 @@
-"""What several verbs need: places of the three files, mapping and files by order, findings on a terminal and as files."""
+"""What several verbs need.
+
+Places of the three files, mapping and files by order, findings on a terminal and as files.
+"""
 
 from __future__ import annotations
 
@@ -91,7 +94,8 @@ def print_findings(findings: Iterable[Finding], stream: io.TextIOBase | None = N
             notes.setdefault((f.code, f.source, f.sheet, f.column, f.rule), []).append(f.line)
     for (code, source, sheet, column, rule), lines in sorted(notes.items()):
         where = f"line {', '.join(map(str, lines))}" if len(lines) <= FEW else f"{len(lines)} rows"
-        print(f"  {code} (note) {source}/{sheet}{', ' + column if column else ''}: {rule} ({where})", file=out)
+        place = f"{source}/{sheet}{', ' + column if column else ''}"
+        print(f"  {code} (note) {place}: {rule} ({where})", file=out)
 
 
 def findings_csv(findings: Iterable[Finding]) -> str:

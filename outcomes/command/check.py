@@ -1,7 +1,7 @@
 """Check the files of one source against their mapping without storing anything.
 
-Lists every finding with file, line, column and rule, and counts each rule's denominator. Exit code 3 if anything
-would be refused.
+Lists every finding with file, line, column and rule, and counts each rule's denominator. Exit code 3 if
+anything would be refused.
 
 example:
   outcomes check north.toml runs.csv --findings findings.csv
@@ -63,6 +63,7 @@ def run(args: argparse.Namespace) -> int:
                 print(f"  {check['code']}: {said} ({check['of']})")
         c = done.counts
         print(
-            f"Rows read {c.rows_read}: {c.rows_accepted} good, {c.rows_set_aside} would be set aside, {c.rows_duplicate} duplicates"
+            f"Rows read {c.rows_read}: {c.rows_accepted} good, {c.rows_set_aside} would be set aside, "
+            f"{c.rows_duplicate} duplicates"
         )
     return 3 if done.refusals else 0

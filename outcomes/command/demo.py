@@ -1,7 +1,8 @@
 """From a messy invented export to an audit report, in one go.
 
-Writes two invented exports of an invented programme, shows how the messy one is refused, sets the defective rows aside,
-imports both into a new store and makes the annual audit (internal profile). Prints the path of the report.
+Writes two invented exports of an invented programme, shows how the messy one is refused, sets the defective
+rows aside, imports both into a new store and makes the annual audit (internal profile). Prints the path of
+the report.
 
 example:
   outcomes demo --out demo-output
@@ -58,7 +59,7 @@ def run(args: argparse.Namespace) -> int:
 
 
 def _keys(seed: int) -> Callable[[], str]:
-    """Surrogates from a seed, so that the demo always gives the same report; a real import never does this."""
+    """Surrogates from a seed, so that the demo always gives the same report; a real import never does."""
     source = random.Random(seed)
     return lambda: f"{source.getrandbits(128):032x}"
 
@@ -79,7 +80,8 @@ def _import(style: str, mapping_path: Path, files: list[Path], store: Path, keys
     done = run_import(Request(Places.beside(store), mapping, paths, set_aside=True, new_key=keys))
     c = done.counts
     print(
-        f"  rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} + duplicates {c.rows_duplicate}; batch {done.batch}"
+        f"  rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} "
+        f"+ duplicates {c.rows_duplicate}; batch {done.batch}"
     )
 
 

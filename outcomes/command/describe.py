@@ -67,7 +67,8 @@ def _find(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
 
 def _table(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
     rows = con.execute(
-        "select column_name, data_type, comment from duckdb_columns() where schema_name = 'record' and table_name = ? order by column_index",
+        "select column_name, data_type, comment from duckdb_columns()"
+        " where schema_name = 'record' and table_name = ? order by column_index",
         [word],
     ).fetchall()
     if not rows:
@@ -88,7 +89,8 @@ def _field(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
     if field is None:
         return []
     comment = con.execute(
-        "select comment from duckdb_columns() where schema_name = 'record' and table_name = ? and column_name = ?",
+        "select comment from duckdb_columns()"
+        " where schema_name = 'record' and table_name = ? and column_name = ?",
         [field.table, field.column],
     ).fetchone()
     lines = [
@@ -116,7 +118,8 @@ def _number(value: float | None) -> str:
 
 def _label(con: duckdb.DuckDBPyConnection, word: str) -> str:
     row = con.execute(
-        "select label || ', ' || unit from vocabulary.analyte where analyte = ? union all select label from vocabulary.complication_kind where kind = ?",
+        "select label || ', ' || unit from vocabulary.analyte where analyte = ?"
+        " union all select label from vocabulary.complication_kind where kind = ?",
         [word, word],
     ).fetchone()
     return str(row[0]) if row else word
@@ -128,20 +131,33 @@ def _list(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
 
 
 def _code(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
-    lines = [
-        f"code {word} of the list {name}: {label}"
-        for name, label in con.execute(
-            "select list, label from vocabulary.code_value where value = ? order by list", [word]
-        ).fetchall()
+    in_lists = con.execute(
+        "select list, label from vocabulary.code_value where value = ? order by list", [word]
+    ).fetchall()
+    return [
+        *(f"code {word} of the list {name}: {label}" for name, label in in_lists),
+        *_complication(con, word),
+        *_own_list(con, word),
+        *_analyte(con, word),
     ]
-    for label, gap, window, start, at_risk, source in con.execute(
-        "select label, gap_h, window_h, from_h, at_risk, source from vocabulary.complication_kind where kind = ?",
+
+
+def _complication(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
+    rows = con.execute(
+        "select label, gap_h, window_h, from_h, at_risk, source"
+        " from vocabulary.complication_kind where kind = ?",
         [word],
-    ).fetchall():
-        lines.append(
-            f"complication {word}: {label}. A new record within {gap:g} h is the same episode; counted up to {window:g} h after the end; "
-            f"at risk from {start:g} h, {at_risk}. Definition: {source}"
-        )
+    ).fetchall()
+    return [
+        f"complication {word}: {label}. A new record within {gap:g} h is the same episode; "
+        f"counted up to {window:g} h after the end; at risk from {start:g} h, {at_risk}. Definition: {source}"
+        for label, gap, window, start, at_risk, source in rows
+    ]
+
+
+def _own_list(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
+    """Codes of the lists that have a table of their own."""
+    lines = []
     for table, column in (
         ("end_kind", "end_kind"),
         ("indication_group", "indication_group"),
@@ -152,14 +168,19 @@ def _code(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
         row = con.execute(f"select {meaning} from vocabulary.{table} where {column} = ?", [word]).fetchone()
         if row:
             lines.append(f"code {word} of the list {table}: {row[0]}")
-    for label, unit, low, high, hard_low, hard_high in con.execute(
-        "select label, unit, plausible_low, plausible_high, hard_low, hard_high from vocabulary.analyte where analyte = ?",
-        [word],
-    ).fetchall():
-        lines.append(
-            f"analyte {word}: {label}, {unit}; usual {low:g} to {high:g}, possible {hard_low:g} to {hard_high:g}"
-        )
     return lines
+
+
+def _analyte(con: duckdb.DuckDBPyConnection, word: str) -> list[str]:
+    rows = con.execute(
+        "select label, unit, plausible_low, plausible_high, hard_low, hard_high"
+        " from vocabulary.analyte where analyte = ?",
+        [word],
+    ).fetchall()
+    return [
+        f"analyte {word}: {label}, {unit}; usual {low:g} to {high:g}, possible {hard_low:g} to {hard_high:g}"
+        for label, unit, low, high, hard_low, hard_high in rows
+    ]
 
 
 def _finding(word: str) -> list[str]:
@@ -167,6 +188,7 @@ def _finding(word: str) -> list[str]:
     for check in all_checks():
         if check.code == word:
             lines.append(
-                f"check {word} ({check.topic}): {check.rule}; sets aside: {check.effect}; denominator: rows of {check.of}"
+                f"check {word} ({check.topic}): {check.rule}; sets aside: {check.effect}; "
+                f"denominator: rows of {check.of}"
             )
     return lines

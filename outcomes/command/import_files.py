@@ -81,7 +81,8 @@ def show(done: Imported) -> None:
     shared.print_findings(done.findings)
     c = done.counts
     print(
-        f"Rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} + duplicates {c.rows_duplicate}"
+        f"Rows read {c.rows_read} = accepted {c.rows_accepted} + set aside {c.rows_set_aside} "
+        f"+ duplicates {c.rows_duplicate}"
     )
     print(f"Runs: {done.merge.new} new, {done.merge.unchanged} unchanged, {done.merge.changed} replaced")
     print(

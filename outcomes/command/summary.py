@@ -54,7 +54,8 @@ def _show(cohort: Cohort) -> None:
             print(f"  ended {kind}: {n}")
     for row in cohort.batches.itertuples():
         print(
-            f"Batch {row.batch_no} ({row.source_key}, {row.policy}): rows read {row.rows_read} = accepted {row.rows_accepted} "
-            f"+ set aside {row.rows_set_aside} + duplicates {row.rows_duplicate}"
+            f"Batch {row.batch_no} ({row.source_key}, {row.policy}): rows read {row.rows_read} "
+            f"= accepted {row.rows_accepted} + set aside {row.rows_set_aside} "
+            f"+ duplicates {row.rows_duplicate}"
         )
     print(f"Content {cohort.fingerprint[:16]}")

@@ -1,7 +1,7 @@
 """Write an invented messy export with its mapping file, for a demonstration or a test.
 
-People, programme and numbers are invented. With --defects faults are planted; the list of them is written beside the
-export, so that one can see whether every one is found.
+People, programme and numbers are invented. With --defects faults are planted; the list of them is written
+beside the export, so that one can see whether every one is found.
 
 example:
   outcomes synthesise --style north --runs 120 --seed 7 --out invented --defects

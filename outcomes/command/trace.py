@@ -1,7 +1,7 @@
 """Follow one run through every hop: from its line in the export to the lines of the audit it stands in.
 
-For internal use. The key is the run's random key or its first eight or more characters, as the internal report lists it.
-Batch, sheet and line come from the calendar file; without it that hop says "not kept".
+For internal use. The key is the run's random key or its first eight or more characters, as the internal
+report lists it. Batch, sheet and line come from the calendar file; without it that hop says "not kept".
 
 example:
   outcomes trace 4f1c09ab --store unit.duckdb
@@ -55,7 +55,8 @@ def _find(con: duckdb.DuckDBPyConnection, given: str) -> str:
             todo="the internal report lists the keys",
         )
     rows = con.execute(
-        "select run_key from record.support_run where starts_with(run_key, ?) union select run_key from record.set_aside_run where starts_with(run_key, ?)",
+        "select run_key from record.support_run where starts_with(run_key, ?)"
+        " union select run_key from record.set_aside_run where starts_with(run_key, ?)",
         [given, given],
     ).fetchall()
     if len(rows) != 1:
@@ -86,14 +87,16 @@ def _origin(con: duckdb.DuckDBPyConnection, places: Places, key: str) -> Iterato
         return
     yield f"hop 1  batch {entry.batch}, file {entry.file_key}, sheet {entry.sheet_key}, line {entry.line}"
     columns = con.execute(
-        "select sheet_key, header, field, unit from ledger.source_column where batch_no = ? and file_key = ? order by sheet_key, field, header",
+        "select sheet_key, header, field, unit from ledger.source_column"
+        " where batch_no = ? and file_key = ? order by sheet_key, field, header",
         [entry.batch, entry.file_key],
     ).fetchall()
     for sheet, header, field, unit in columns:
         if sheet == entry.sheet_key:
             yield f"hop 2  column {header!r} gives {field}" + (f" in {unit}" if unit != "1" else "")
     findings = con.execute(
-        "select code, effect, header, rule from ledger.finding where batch_no = ? and file_key = ? and sheet_key = ? and line = ? order by all",
+        "select code, effect, header, rule from ledger.finding"
+        " where batch_no = ? and file_key = ? and sheet_key = ? and line = ? order by all",
         [entry.batch, entry.file_key, entry.sheet_key, entry.line],
     ).fetchall()
     for code, effect, header, rule in findings:
@@ -108,9 +111,9 @@ def _calendar_entry(con: duckdb.DuckDBPyConnection, places: Places, key: str) ->
 def _records(con: duckdb.DuckDBPyConnection, key: str) -> Iterator[str]:
     for table in sorted(tables_by_run()):
         names = [c for c, _ in record_columns()[table] if c not in ("run_key", "person_key")]
+        listed = ", ".join(f'"{n}"' for n in names)
         rows = con.execute(
-            f"select {', '.join(chr(34) + n + chr(34) for n in names)} from record.{table} where run_key = ? order by all",
-            [key],
+            f"select {listed} from record.{table} where run_key = ? order by all", [key]
         ).fetchall()
         for row in rows:
             yield f"hop 3  record.{table}: " + _pairs(names, row)
@@ -118,8 +121,10 @@ def _records(con: duckdb.DuckDBPyConnection, key: str) -> Iterator[str]:
 
 def _marts(con: duckdb.DuckDBPyConnection, key: str) -> Iterator[str]:
     for mart in _MARTS:
-        found = con.execute(f"select * exclude (run_key, person_key) from mart.{mart} where run_key = ? order by all" if mart != "score_input"
-                            else "select * exclude (run_key) from mart.score_input where run_key = ?", [key])  # fmt: skip
+        left_out = "run_key" if mart == "score_input" else "run_key, person_key"
+        found = con.execute(
+            f"select * exclude ({left_out}) from mart.{mart} where run_key = ? order by all", [key]
+        )
         names = [d[0] for d in found.description]
         for row in found.fetchall():
             yield f"hop 4  mart.{mart}: " + _pairs(names, row)
