@@ -18,6 +18,7 @@ from outcomes.cohort.frames import load_cohort
 from outcomes.cohort.marts import open_marts
 from outcomes.command import _shared as shared
 from outcomes.command._provenance import provenance
+from outcomes.command._scores import score_tables
 from outcomes.errors import UsageError
 from outcomes.report.assemble import Options, assemble
 from outcomes.report.codec import results_json
@@ -39,6 +40,8 @@ def arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--source", action="append", default=[], metavar="KEY", help="only this source (may be repeated)")
     parser.add_argument("--score-checked", action="append", default=[], metavar="SCORE=DATE,ROLE",
                         help="the programme has checked this score's table against the paper")  # fmt: skip
+    parser.add_argument("--score-tables", metavar="FOLDER",
+                        help="folder with score tables of your own, which replace or add to ours")  # fmt: skip
     parser.add_argument("--date", metavar="YYYY-MM-DD", help="date to print on the report (none by default)")
     parser.add_argument("--force", action="store_true", help="overwrite an earlier report of the same name")
 
@@ -61,12 +64,19 @@ def run(args: argparse.Namespace) -> int:
 
 
 def make_report(args: argparse.Namespace) -> Report:
+    tables = score_tables(args.score_tables)
     con = open_marts(shared.places_of(args).store)
     try:
         cohort = load_cohort(con)
     finally:
         con.close()
-    audit = make_audit(cohort, years=_years(args.years), sources=tuple(args.source), score_checks=tuple(args.score_checked))
+    audit = make_audit(
+        cohort,
+        years=_years(args.years),
+        sources=tuple(args.source),
+        score_checks=tuple(args.score_checked),
+        tables=tables,
+    )
     given = provenance(audit.whole, kind=f"{args.kind}, profile {args.profile}", options=_options(args, audit), made_on=_date(args.date))
     return assemble(REPORTS[args.kind], analyses(), audit, Options(profile=args.profile, title=f"Annual audit of veno-arterial ECMO support runs begun {audit.label}", provenance=given))
 
@@ -75,6 +85,8 @@ def _options(args: argparse.Namespace, audit: Audit) -> list[str]:
     lines = [f"period {audit.label}"]
     lines += [f"source {key}" for key in sorted(args.source)]
     lines += [f"score table checked: {entry}" for entry in sorted(args.score_checked)]
+    own = [s for s in audit.tables.scores() if s.whose == "site"] if audit.tables else []
+    lines += [f"score table of the programme's own: {s.key}, SHA-256 {s.text_hash}" for s in own]
     return lines
 
 

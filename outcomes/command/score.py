@@ -7,6 +7,7 @@ examples:
   outcomes score show save
   outcomes score compute save --store unit.duckdb --out save.csv
   outcomes score check our_tables/save.toml
+  outcomes score check --tables our_tables
 """
 
 from __future__ import annotations
@@ -19,14 +20,14 @@ import pandas as pd
 from outcomes.cohort.frames import load_cohort
 from outcomes.cohort.marts import open_marts
 from outcomes.command import _shared as shared
+from outcomes.command._scores import score_tables
 from outcomes.errors import DataRefused, UsageError
-from outcomes.scores.catalogue import Catalogue, catalogue, list_scores
+from outcomes.scores.catalogue import Catalogue, implemented_score, list_scores
 from outcomes.scores.checking import check_table
-from outcomes.scores.engine import compute
 from outcomes.scores.page import sheet_lines
 from outcomes.scores.sheet import describe_score
 from outcomes.study.audit_data import make_audit
-from outcomes.study.audit_scores import score_frame
+from outcomes.study.audit_scores import compute_on, score_frame
 
 
 def arguments(parser: argparse.ArgumentParser) -> None:
@@ -41,13 +42,14 @@ def arguments(parser: argparse.ArgumentParser) -> None:
             shared.store_arguments(verb)
             verb.add_argument("--out", metavar="FILE", help="write one line a run as CSV (internal)")
     check = verbs.add_parser("check", help="validate a table of your own and run its vectors", allow_abbrev=False)
-    check.add_argument("file", help="score table (TOML)")
+    check.add_argument("file", nargs="?", help="score table (TOML)")
+    check.add_argument("--tables", metavar="FOLDER", help="check every table of this folder")
 
 
 def run(args: argparse.Namespace) -> int:
     if args.what == "check":
         return _check(args)
-    tables = _tables(args.tables)
+    tables = score_tables(args.tables)
     if args.what == "list":
         listed = list_scores(tables)
         if args.json:
@@ -66,33 +68,33 @@ def run(args: argparse.Namespace) -> int:
     return _compute(args, tables)
 
 
-def _tables(folder: str | None) -> Catalogue | None:
-    if folder is None:
-        return None
-    if not Path(folder).is_dir():
-        raise UsageError("USAGE.FOLDER", "the folder of score tables does not exist")
-    return catalogue(Path(folder))
-
-
 def _check(args: argparse.Namespace) -> int:
-    path = Path(args.file)
-    if not path.is_file():
+    if (args.file is None) == (args.tables is None):
+        raise UsageError("USAGE.ARGUMENTS", "give one score table, or --tables with a folder")
+    paths = [Path(args.file)] if args.file else sorted(Path(args.tables).glob("*.toml"))
+    if not paths or not all(path.is_file() for path in paths):
         raise UsageError("USAGE.FILE", "the score table is not there", where="argument 1")
+    good = [_check_one(path) for path in paths]
+    return 0 if all(good) else 3
+
+
+def _check_one(path: Path) -> bool:
     try:
         found = check_table(path.read_bytes().decode("utf-8"))
     except UnicodeDecodeError:
         raise DataRefused("SCORE.ENCODING", "the score table is not UTF-8") from None
     print("\n".join(found.lines()))
-    return 0 if found.is_good else 3
+    return found.is_good
 
 
 def _compute(args: argparse.Namespace, tables: Catalogue | None) -> int:
+    score = implemented_score(args.score, tables)
     con = open_marts(shared.places_of(args).store)
     try:
         cohort = load_cohort(con)
     finally:
         con.close()
-    answer = compute(args.score, score_frame(make_audit(cohort, years=None, sources=())), tables=tables)
+    answer = compute_on(score, score_frame(make_audit(cohort, years=None, sources=()))).answer
     if args.out:
         text = answer.reset_index().to_csv(index=False, lineterminator="\r\n")
         shared.write_output(Path(args.out), text.encode("utf-8"))
@@ -102,7 +104,7 @@ def _compute(args: argparse.Namespace, tables: Catalogue | None) -> int:
     else:
         for key, value in body.items():
             print(f"{key}: {value}")
-        print("A bounded run has missing inputs: its total lies between two values. " + describe_score(args.score, tables).caution)
+        print("A bounded run has missing inputs: its total lies between two values. " + describe_score(score).caution)
     return 0
 
 

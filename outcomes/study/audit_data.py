@@ -8,6 +8,7 @@ import pandas as pd
 
 from outcomes.cohort.frames import Cohort, select_runs
 from outcomes.errors import UsageError
+from outcomes.scores.catalogue import Catalogue
 
 UNKNOWN = "not recorded"
 
@@ -15,7 +16,8 @@ UNKNOWN = "not recorded"
 @dataclass(frozen=True)
 class Audit:
     """current, before: cohorts of the two periods (before is None without a comparable one). label, label_before: years
-    in print. whole: everything in the store from the chosen sources, for the course over the years."""
+    in print. whole: everything in the store from the chosen sources, for the course over the years. score_checks:
+    declarations SCORE=DATE,ROLE. tables: score tables with the programme's own in place of or beside the shipped ones."""
 
     current: Cohort
     before: Cohort | None
@@ -23,14 +25,21 @@ class Audit:
     label: str
     label_before: str
     score_checks: tuple[str, ...] = ()
-    site_tables: str = ""
+    tables: Catalogue | None = None
 
 
 def years_label(first: int, last: int) -> str:
     return str(first) if first == last else f"{first} to {last}"
 
 
-def make_audit(cohort: Cohort, *, years: tuple[int, int] | None, sources: tuple[str, ...], score_checks: tuple[str, ...] = ()) -> Audit:
+def make_audit(
+    cohort: Cohort,
+    *,
+    years: tuple[int, int] | None,
+    sources: tuple[str, ...],
+    score_checks: tuple[str, ...] = (),
+    tables: Catalogue | None = None,
+) -> Audit:
     """Select sources and period. The period before has the same number of years and counts only if every source covers
     all of it; otherwise there is no comparison.
 
@@ -52,7 +61,7 @@ def make_audit(cohort: Cohort, *, years: tuple[int, int] | None, sources: tuple[
     before = _of_years(whole, before_first, before_last) if comparable else None
     if before is not None and before.run.empty:
         before = None
-    return Audit(current, before, whole, years_label(first, last), years_label(before_first, before_last), score_checks)
+    return Audit(current, before, whole, years_label(first, last), years_label(before_first, before_last), score_checks, tables)
 
 
 def _of_sources(cohort: Cohort, sources: tuple[str, ...]) -> Cohort:

@@ -1,29 +1,55 @@
-"""Published pre-support scores: section 6 of the audit. Totals, bounds and eligibility; expected survivors only from
-tables that the programme has checked, or that need no check."""
+"""Published pre-support scores: section 6 of the audit. In how many runs each could be computed, for whom it was made,
+what is missing, and observed beside expected where the table may be used for that."""
 
 from __future__ import annotations
 
-import re
+from collections.abc import Sequence
+from dataclasses import dataclass
 
 import pandas as pd
 
-from outcomes.analysis.rates import standardised_ratio
-from outcomes.analysis.result import Caution, Method, Result, tidy
-from outcomes.errors import NotEstimable, UsageError
-from outcomes.scores.catalogue import find_score, list_scores
-from outcomes.scores.engine import compute
-from outcomes.scores.gate import DeclaredCheck, usable_for_expectation
+from outcomes.analysis.result import Caution
+from outcomes.errors import NotEstimable
+from outcomes.scores.catalogue import Catalogue, chosen_options, our_catalogue
+from outcomes.scores.engine import compute, weakest
+from outcomes.scores.gate import Usable, usable_for_expectation
+from outcomes.scores.model import Score, under
+from outcomes.scores.sheet import CAUTION
 from outcomes.study.answer import Answer, ColumnOf, RowOf, TableOf
 from outcomes.study.audit_data import Audit
-from outcomes.study.shape import COUNTED, counted, slug
+from outcomes.study.audit_scores_expected import declared_checks, expected_parts, horizon_of
+from outcomes.study.audit_scores_lists import classes_part, organ_part, published_part, reasons_part
+from outcomes.study.audit_scores_missing import lacking_part, windows_part
+from outcomes.study.shape import counted, slug
 
-_COUNTS = ["group", "runs", "eligible", "not_eligible", "not_judged", "complete", "bounded", "asked", "lacking", "lowest", "median", "highest"]
+WHOSE = {"ours": "shipped", "site": "the programme's own"}
+_COUNTS = [
+    "group", "runs", "eligible", "not_eligible", "not_judged", "asked", "complete", "bounded", "not_computable",
+    "class_known", "lower_quartile", "median", "upper_quartile", "reason",
+]  # fmt: skip
 
 
-def score_answers(audit: Audit, keys: list[str]) -> dict[str, pd.DataFrame]:
-    """Score key -> answers, one row a run of the period."""
-    frame = score_frame(audit)
-    return {key: compute(key, frame) for key in keys}
+@dataclass(frozen=True)
+class Computed:
+    """A score with its answer for every run of the period. nothing_known: the answer of a run without any value."""
+
+    score: Score
+    answer: pd.DataFrame
+    nothing_known: pd.Series
+
+    @property
+    def active(self) -> Score:
+        """The score under its default choices, as it was computed."""
+        return under(self.score, chosen_options(self.score, None))
+
+    @property
+    def eligible(self) -> pd.Series:
+        return self.answer["eligible"].astype("string")
+
+    @property
+    def asked(self) -> pd.DataFrame:
+        """Answers of the runs that are eligible or cannot be judged."""
+        return self.answer[self.eligible != "no"]
 
 
 def score_frame(audit: Audit) -> pd.DataFrame:
@@ -35,140 +61,137 @@ def score_frame(audit: Audit) -> pd.DataFrame:
     return frame
 
 
-def published_scores(audit: Audit, keys: list[str]) -> Answer:
-    """For each score: eligible, not, cannot be judged; complete, bounded; the spread of totals; what is missing most."""
+def compute_on(score: Score, frame: pd.DataFrame) -> Computed:
+    """The score on a frame of `score_frame`; an input that the store does not know is missing in every run."""
+    whole = with_inputs(score, frame)
+    empty = whole.iloc[:0].reindex([""])
+    return Computed(score, compute(score, whole), compute(score, empty).iloc[0])
+
+
+def with_inputs(score: Score, frame: pd.DataFrame) -> pd.DataFrame:
+    """The frame with an empty column for every input that it does not have."""
+    kinds = {"yes_no": "boolean", "choice": "string"}
+    lacking = {
+        x.field.name: kinds.get(x.field.kind, "Float64")
+        for x in score.inputs
+        if x.field.name not in frame.columns
+    }
+    return frame.assign(
+        **{name: pd.Series(pd.NA, index=frame.index, dtype=kind) for name, kind in lacking.items()}
+    )
+
+
+def score_answers(audit: Audit, keys: Sequence[str] = ()) -> list[Computed]:
+    """Every implemented score of the audit's tables (or those named), scores that predict first."""
+    tables: Catalogue = audit.tables or our_catalogue()
+    found = [tables.score(k) for k in keys] if keys else [s for s in tables.scores() if s.is_implemented]
+    found.sort(key=lambda s: (s.purpose == "descriptor", s.name))
+    frame = score_frame(audit)
+    return [compute_on(score, frame) for score in found]
+
+
+def published_scores(audit: Audit, keys: Sequence[str] = ()) -> Answer:
+    """Section 6. keys: only these scores; all implemented ones if none is named."""
     if audit.current.score_input.empty:
         raise NotEstimable("no_runs", "No run is in this period.")
-    answers = score_answers(audit, keys)
-    counts = [_count_row(key, answers[key]) for key in keys]
-    labels = {key: _title(key) for key in keys}
-    lacking = _lacking(answers, labels)
-    gate = [_gate_row(audit, key) for key in keys]
-    expected = _expected(audit, answers)
+    checks = declared_checks(audit.score_checks, audit.tables or our_catalogue())
+    found = score_answers(audit, keys)
+    gate = {c.score.key: usable_for_expectation(c.score, checks) for c in found}
+    rows = tuple(RowOf(slug(c.score.key), c.score.name, {"group": c.score.key}) for c in found)
     results = {
-        "scores": counted(counts, _COUNTS), "lacking": lacking,
-        "gate": counted(gate, ["group", "allowed", "why"], words=("allowed", "why")), "expected": expected,
-    }  # fmt: skip
-    rows = tuple(RowOf(slug(k), labels[k], {"group": k}) for k in keys)
+        "scores": counted([_count_row(c) for c in found], _COUNTS),
+        "gate": counted([_gate_row(c.score, gate[c.score.key]) for c in found], ["group", *_GATE], words=_GATE),
+    }
     tables = {
-        "scores": TableOf("In how many runs each score could be computed", "Score", "scores", rows, _columns()),
-        "score_gate": TableOf("Whether expected survivors may be given", "Score", "gate", rows,
-                              (ColumnOf("allowed", "Expected survivors", "word", ("allowed",)), ColumnOf("why", "Because", "word", ("why",)))),
+        "scores": TableOf("In how many runs each score could be computed", "Score", "scores", rows, _columns(), (_COUNT_NOTE,)),
+        "score_gate": TableOf(_GATE_CAPTION, "Score", "gate", rows, _gate_columns()),
     }  # fmt: skip
-    if len(lacking.table):
-        shown = tuple(RowOf(f"i{i}", str(g), {"group": str(g)}) for i, g in enumerate(lacking.table["group"]))
-        tables["score_lacking"] = TableOf("Which inputs are missing most", "Score and input", "lacking", shown,
-                                          (ColumnOf("runs", "Runs of those eligible or not judged", "x_of_n", ("events", "at_risk")),))  # fmt: skip
-    if len(expected.table):
-        shown = tuple(RowOf(slug(str(g)), labels[str(g)], {"group": str(g)}) for g in expected.table["group"])
-        tables["score_expected"] = TableOf("Observed and expected", "Score", "expected", shown, _expected_columns())
-    return Answer(
-        results, tables, facts={"any_expected": bool(len(expected.table))},
-        cautions=(Caution("SCORE", "Scores were made elsewhere and earlier, in other people; they inform audit and research and are no verdict on care "
-                                   "and no bedside decision."),),
-    )  # fmt: skip
+    frame = score_frame(audit)
+    for more_results, more_tables in (
+        expected_parts(audit, [c for c in found if gate[c.score.key].is_usable], checks, frame),
+        lacking_part(found),
+        reasons_part(found),
+        classes_part(found),
+        organ_part(found, frame),
+        windows_part(audit.current.score_window, audit.current.score_input),
+        published_part(found),
+    ):
+        results |= more_results
+        tables |= more_tables
+    return Answer(results, tables, facts=_facts(audit, found, tables), cautions=(Caution("SCORE", CAUTION),))
 
 
-def _title(key: str) -> str:
-    listed = list_scores()
-    row = listed[listed["key"] == key]
-    return str(row.iloc[0]["name"])
+_COUNT_NOTE = (
+    "Complete, bounded and not computable: of the runs that are eligible or cannot be judged. Bounded: an input is missing "
+    "or known within limits only, so the total lies between two values."
+)
+_GATE_CAPTION = "What each score predicts, whose table was used, and whether expected numbers may be given"
 
 
-def _count_row(key: str, answer: pd.DataFrame) -> dict[str, object]:
-    eligible = answer["eligible"].astype("string")
-    asked = answer[eligible != "no"]
+def _facts(audit: Audit, found: list[Computed], tables: dict[str, TableOf]) -> dict[str, bool | str]:
+    inputs = audit.current.score_input
+    return {
+        "any_expected": any(key.startswith("expected_") for key in tables),
+        "any_own": any(c.score.whose == "site" for c in found),
+        "any_checked": bool(audit.score_checks),
+        "any_interval_age": bool((inputs["age_low_years"] != inputs["age_years"]).fillna(False).any()),
+        "any_later_run": bool((inputs["nth_run"] > 1).fillna(False).any()),
+        "has_save": any(c.score.key == "save" for c in found),
+    }
+
+
+def _count_row(found: Computed) -> dict[str, object]:
+    asked, eligible = found.asked, found.eligible
     complete = asked["total"].notna()
-    totals = asked.loc[complete, "total"].astype("Float64")
+    nothing = ~complete
+    for end in ("total_low", "total_high"):
+        nothing &= (asked[end] == found.nothing_known[end]).fillna(False).astype(bool)
     row: dict[str, object] = {
-        "group": key, "runs": len(answer), "eligible": int((eligible == "yes").sum()), "asked": len(asked), "not_eligible": int((eligible == "no").sum()),
+        "group": found.score.key, "runs": len(found.answer), "asked": len(asked), "reason": "not_applicable",
+        "eligible": int((eligible == "yes").sum()), "not_eligible": int((eligible == "no").sum()),
         "not_judged": int((eligible == "unknown").sum()), "complete": int(complete.sum()),
-        "bounded": int((~complete).sum()), "lacking": int((answer["missing"].astype("string").fillna("") != "").sum()),
+        "not_computable": int(nothing.sum()), "bounded": int((~complete & ~nothing).sum()),
     }  # fmt: skip
+    if found.score.classes:
+        row["class_known"] = int(asked["class"].notna().sum())
+    totals = asked.loc[complete, "total"].astype(float)
     if len(totals):
-        low, middle, high = totals.astype(float).quantile([0.25, 0.5, 0.75])
-        row |= {"lowest": low, "median": middle, "highest": high}
+        low, middle, high = totals.quantile([0.25, 0.5, 0.75])
+        row |= {"lower_quartile": low, "median": middle, "upper_quartile": high}
     return row
 
 
 def _columns() -> tuple[ColumnOf, ...]:
+    quartiles = ("median", "lower_quartile", "upper_quartile")
     return (
         ColumnOf("eligible", "Eligible", "x_of_n", ("eligible", "runs")),
         ColumnOf("not_eligible", "Not eligible", "count", ("not_eligible",)),
         ColumnOf("not_judged", "Cannot be judged", "count", ("not_judged",)),
-        ColumnOf("complete", "Complete, of those eligible or not judged", "x_of_n", ("complete", "asked")),
-        ColumnOf("bounded", "Bounded only", "count", ("bounded",)),
-        ColumnOf("total", "Total, median (25th to 75th percentile)", "quartiles_0", ("median", "lowest", "highest")),
+        ColumnOf("complete", "Complete", "x_of_n", ("complete", "asked"), over="Total"),
+        ColumnOf("bounded", "Bounded", "count", ("bounded",), over="Total"),
+        ColumnOf("not_computable", "Not computable", "count", ("not_computable",), over="Total"),
+        ColumnOf("total", "Median (25th to 75th percentile)", "quartiles_0", quartiles, over="Total"),
+        ColumnOf("class_known", "Class known", "count", ("class_known",)),
     )
 
 
-def _lacking(answers: dict[str, pd.DataFrame], labels: dict[str, str]) -> Result:
-    """The three inputs of each score that most runs lack, among runs that are eligible or cannot be judged."""
-    rows: list[dict[str, object]] = []
-    for key, answer in answers.items():
-        asked = answer[answer["eligible"].astype("string") != "no"]
-        names = asked["missing"].astype("string").fillna("").str.split(r"[;,]\s*", regex=True).explode()
-        found = names[names != ""].value_counts()
-        for name in sorted(found.index, key=lambda n: (-int(found[n]), n))[:3]:
-            rows.append({"group": f"{labels[key]}: {str(name).replace('_', ' ')}", "events": int(found[name]), "at_risk": len(asked)})
-    return Result(tidy(rows, ["group", "events", "at_risk"]), COUNTED)
+_GATE = ("predicts", "whose", "evidence", "allowed", "why")
 
 
-def _checks(audit: Audit) -> dict[str, DeclaredCheck]:
-    """--score-checked SCORE=DATE,ROLE as declarations of the gate."""
-    found = {}
-    for entry in audit.score_checks:
-        parts = re.fullmatch(r"([a-z0-9_]+)=([0-9]{4}-[0-9]{2}-[0-9]{2}),(.{1,60})", entry)
-        if parts is None:
-            raise UsageError("USAGE.SCORE-CHECKED", "write the score, the date and the role of who checked it", todo="--score-checked save=2024-03-01,statistician")
-        found[parts[1]] = DeclaredCheck(parts[1], parts[2], parts[3])
-    return found
+def _gate_row(score: Score, usable: Usable) -> dict[str, object]:
+    told = score.horizon in score.outcome or (score.horizon == "hospital discharge" and "hospital" in score.outcome)
+    predicts = score.outcome if told else f"{score.outcome}; horizon {score.horizon}"
+    given = usable.is_usable and bool(horizon_of(score))
+    why = usable.reason if given or not usable.is_usable else f"outcome not in the store; {usable.reason}"
+    return {
+        "group": score.key, "predicts": predicts if score.outcome else "nothing, it describes", "whose": WHOSE[score.whose],
+        "evidence": weakest(score), "allowed": "given" if given else "not given", "why": why,
+    }  # fmt: skip
 
 
-def _gate_row(audit: Audit, key: str) -> dict[str, object]:
-    usable = usable_for_expectation(key, list(_checks(audit).values()))
-    return {"group": key, "allowed": "given" if usable.is_usable else "not given", "why": usable.reason}
-
-
-def _expected(audit: Audit, answers: dict[str, pd.DataFrame]) -> Result:
-    """Observed and expected survivors to discharge, for scores of that outcome that may be used."""
-    rows, method = [], Method("observed / expected")
-    alive = audit.current.run.set_index("run_key")["is_alive_at_discharge"]
-    checks = list(_checks(audit).values())
-    for key, answer in answers.items():
-        if not usable_for_expectation(key, checks).is_usable or not _predicts_discharge(key):
-            continue
-        known = answer["predicted"].notna() & alive.reindex(answer.index).notna()
-        if not known.any():
-            continue
-        predicted = answer.loc[known, "predicted"].astype(float)
-        higher_is_death = "death" in str(answer.loc[known, "predicted_outcome"].astype("string").iloc[0]).lower()
-        expected = float((1 - predicted).sum() if higher_is_death else predicted.sum())
-        observed = int(alive.reindex(answer.index)[known].astype(bool).sum())
-        row: dict[str, object] = {"group": key, "events": observed, "expected": expected, "at_risk": int(known.sum()), "outside": int((~known).sum())}
-        try:
-            ratio = standardised_ratio(observed, expected)
-            method = ratio.method
-            row |= {c: ratio.table.iloc[0][c] for c in ("estimate", "lower", "upper")}
-        except NotEstimable as reason:
-            row["reason"] = reason.reason_code
-        rows.append(row)
-    return Result(tidy(rows, ["group", "events", "expected", "at_risk", "outside", "estimate", "lower", "upper", "reason"]), method)
-
-
-def _predicts_discharge(key: str) -> bool:
-    words = str(find_score(key).outcome).lower()
-    return "hospital" in words and "30" not in words
-
-
-def _expected_columns() -> tuple[ColumnOf, ...]:
-    return (
-        ColumnOf("runs", "Runs", "count", ("at_risk",)),
-        ColumnOf("observed", "Observed survivors", "count", ("events",)),
-        ColumnOf("expected", "Expected survivors", "number_1", ("expected",)),
-        ColumnOf("ratio", "Observed / expected", "ratio_interval", ("estimate", "lower", "upper")),
-        ColumnOf("outside", "Runs outside", "count", ("outside",)),
-    )
+def _gate_columns() -> tuple[ColumnOf, ...]:
+    heads = ("Predicts", "Table", "Weakest evidence in it", "Expected numbers", "Because")
+    return tuple(ColumnOf(key, head, "word", (key,)) for key, head in zip(_GATE, heads, strict=True))
 
 
 ANALYSES = {"published_scores": published_scores}
