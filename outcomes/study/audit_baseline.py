@@ -1,4 +1,7 @@
-"""Who was supported: section 3 of the audit. Known at the start; the columns by ending are description only."""
+"""Who was supported: section 3 of the audit.
+
+Known at the start; the columns by ending are description only.
+"""
 
 from __future__ import annotations
 
@@ -11,19 +14,30 @@ from outcomes.study.answer import Answer, ColumnOf, RowOf, TableOf
 from outcomes.study.audit_data import Audit
 from outcomes.study.shape import ENDINGS, slug
 
-DESCRIBED = Method("median with 25th and 75th percentile (type 7), or x of those recorded",
-                   citations=("Hyndman RJ, Fan Y. Am Stat 1996;50:361-5.",))  # fmt: skip
+DESCRIBED = Method(
+    "median with 25th and 75th percentile (type 7), or x of those recorded",
+    citations=("Hyndman RJ, Fan Y. Am Stat 1996;50:361-5.",),
+)
 MEASURES = {
-    "age_years": "age, years", "weight_kg": "body mass, kg", "bmi_kg_m2": "body mass index, kg/m2",
-    "lactate_mmol_l": "lactate before support, mmol/L", "ph": "pH before support", "bicarbonate_mmol_l": "bicarbonate before support, mmol/L",
-    "creatinine_umol_l": "creatinine before support, umol/L", "low_flow_min": "low flow, min, those with an arrest",
-}  # fmt: skip
+    "age_years": "age, years",
+    "weight_kg": "body mass, kg",
+    "bmi_kg_m2": "body mass index, kg/m2",
+    "lactate_mmol_l": "lactate before support, mmol/L",
+    "ph": "pH before support",
+    "bicarbonate_mmol_l": "bicarbonate before support, mmol/L",
+    "creatinine_umol_l": "creatinine before support, umol/L",
+    "low_flow_min": "low flow, min, those with an arrest",
+}
 FLAGS = {
-    "is_female": "female", "had_arrest": "arrest before support", "is_extracorporeal_cpr": "started during resuscitation",
-    "is_transferred_in": "transferred in on support", "has_acute_renal_failure": "acute renal failure before support",
-    "has_liver_failure": "liver failure before support", "has_cns_dysfunction": "CNS dysfunction before support",
+    "is_female": "female",
+    "had_arrest": "arrest before support",
+    "is_extracorporeal_cpr": "started during resuscitation",
+    "is_transferred_in": "transferred in on support",
+    "has_acute_renal_failure": "acute renal failure before support",
+    "has_liver_failure": "liver failure before support",
+    "has_cns_dysfunction": "CNS dysfunction before support",
     "has_chronic_kidney_disease": "chronic kidney disease",
-}  # fmt: skip
+}
 
 
 def baseline(audit: Audit) -> Answer:
@@ -42,12 +56,22 @@ def baseline(audit: Audit) -> Answer:
     return Answer(
         {"measures": Result(measures, DESCRIBED, n_of, notes), "shares": Result(shares, DESCRIBED, n_of)},
         {
-            "measures": TableOf("What was measured before support: median (25th to 75th percentile)", "Variable", "measures",
-                                _rows(MEASURES, measures), _columns(groups, n_of, measured=True)),
-            "shares": TableOf("Who was supported: number of those recorded", "Variable", "shares",
-                              _rows(labels, shares), _columns(groups, n_of, measured=False)),
+            "measures": TableOf(
+                "What was measured before support: median (25th to 75th percentile)",
+                "Variable",
+                "measures",
+                _rows(MEASURES, measures),
+                _columns(groups, n_of, measured=True),
+            ),
+            "shares": TableOf(
+                "Who was supported: number of those recorded",
+                "Variable",
+                "shares",
+                _rows(labels, shares),
+                _columns(groups, n_of, measured=False),
+            ),
         },
-    )  # fmt: skip
+    )
 
 
 def _frame(audit: Audit) -> pd.DataFrame:

@@ -14,8 +14,25 @@ from outcomes.study.audit_data import Audit
 from outcomes.study.shape import DAY, ENDINGS, run_list, slug
 
 PER = 1000.0
-_COLUMNS = ["group", "affected", "runs", "share", "share_lower", "share_upper", "events", "exposure", "estimate", "lower", "upper",
-            "after_end", "before", "not_at_risk", "looked", "counting", "reason"]  # fmt: skip
+_COLUMNS = [
+    "group",
+    "affected",
+    "runs",
+    "share",
+    "share_lower",
+    "share_upper",
+    "events",
+    "exposure",
+    "estimate",
+    "lower",
+    "upper",
+    "after_end",
+    "before",
+    "not_at_risk",
+    "looked",
+    "counting",
+    "reason",
+]
 
 
 def complications(audit: Audit) -> Answer:
@@ -28,17 +45,14 @@ def complications(audit: Audit) -> Answer:
         "group"
     ].tolist()
     labels = _labels(audit.current, order)
-    before = (
-        rate_table(audit.before.complication)
-        if audit.before is not None and not audit.before.complication.empty
-        else None
-    )
-    results = {"now": now} | ({"before": before} if before is not None else {})
+    results = {"now": now}
+    if audit.before is not None and not audit.before.complication.empty:
+        results["before"] = rate_table(audit.before.complication)
     rows = tuple(RowOf(k, labels[k], {"group": k}) for k in order)
     lists = {
         f"had_{k}": run_list(labels[k], _affected(counts, k)) for k in order if len(_affected(counts, k))
     }
-    words = {"value": "Events per 1,000 support-days", "now": audit.label, "before": audit.label_before}
+    dots = _dots(audit, [k for k in ("now", "before") if k in results], labels)
     tables = {
         "harm": TableOf(
             "Complications on support",
@@ -55,13 +69,26 @@ def complications(audit: Audit) -> Answer:
     results["by_ending"] = by_ending
     tables["harm_by_ending"] = _by_ending_layout(rows, by_ending)
     return Answer(
-        results, tables,
-        {"harm_dots": FigureOf("dots", "Complications per 1,000 support-days", "harm", {k: k for k in ("now", "before") if k in results},
-                               labels, words, {"low": 0.0})},
+        results,
+        tables,
+        {"harm_dots": dots},
         facts={"most": labels[order[0]], "any_first_only": bool((counts["events_kept"] == "first").any())},
         cautions=_cautions(audit, len(order)),
         lists=lists,
-    )  # fmt: skip
+    )
+
+
+def _dots(audit: Audit, periods: list[str], labels: dict[str, str]) -> FigureOf:
+    words = {"value": "Events per 1,000 support-days", "now": audit.label, "before": audit.label_before}
+    return FigureOf(
+        "dots",
+        "Complications per 1,000 support-days",
+        "harm",
+        {k: k for k in periods},
+        labels,
+        words,
+        {"low": 0.0},
+    )
 
 
 def _labels(cohort: Cohort, order: list[str]) -> dict[str, str]:
@@ -75,15 +102,20 @@ def _affected(counts: pd.DataFrame, kind: str) -> pd.Series:
 
 
 def rate_table(counts: pd.DataFrame) -> Result:
-    """One row a kind of mart.complication_count. Rates per 1,000 support-days: where a source keeps only first events
-    time stops at the first one; else all episodes over all time at risk."""
+    """One row a kind of mart.complication_count. Rates per 1,000 support-days.
+
+    Where a source keeps only first events, time stops at the first one; else all episodes count, over all
+    time at risk.
+    """
     rows, methods = [], []
     for kind, mine in counts.groupby("kind", sort=True):
         row, method = _kind_row(str(kind), mine)
         rows.append(row)
         methods += method
-    table = tidy([{k: v for k, v in r.items() if k not in ("looked", "counting")} for r in rows],
-                 [c for c in _COLUMNS if c not in ("looked", "counting")])  # fmt: skip
+    table = tidy(
+        [{k: v for k, v in r.items() if k not in ("looked", "counting")} for r in rows],
+        [c for c in _COLUMNS if c not in ("looked", "counting")],
+    )
     for name in ("looked", "counting"):
         table[name] = pd.array([r[name] for r in rows], dtype="string")
     return Result(table, methods[0] if methods else Method("events / time at risk"), {"kinds": len(rows)})
@@ -95,10 +127,17 @@ def _kind_row(kind: str, mine: pd.DataFrame) -> tuple[dict[str, object], list[Me
     events, days = events_and_days(at_risk, first_only)
     hit = (at_risk["n_events"] > 0) | (at_risk["n_after_end"] > 0)
     row: dict[str, object] = {
-        "group": kind, "affected": int(hit.sum()), "runs": len(at_risk), "events": int(events.sum()), "exposure": float(np.sum(days)),
-        "after_end": int(mine["n_after_end"].sum()), "before": int((mine["n_before"] > 0).sum()), "not_at_risk": int((~mine["is_at_risk"].astype(bool)).sum()),
-        "looked": _looked(mine), "counting": "first events" if first_only else "all episodes",
-    }  # fmt: skip
+        "group": kind,
+        "affected": int(hit.sum()),
+        "runs": len(at_risk),
+        "events": int(events.sum()),
+        "exposure": float(np.sum(days)),
+        "after_end": int(mine["n_after_end"].sum()),
+        "before": int((mine["n_before"] > 0).sum()),
+        "not_at_risk": int((~mine["is_at_risk"].astype(bool)).sum()),
+        "looked": _looked(mine),
+        "counting": "first events" if first_only else "all episodes",
+    }
     methods: list[Method] = []
     try:
         share = proportion(int(hit.sum()), len(at_risk)).table.iloc[0]
@@ -156,12 +195,16 @@ def _beside() -> tuple[ColumnOf, ...]:
 
 def _notes(counts: pd.DataFrame) -> tuple[str, ...]:
     return (
-        "A run is affected if it had an event on support or within the kind's window after it; rates count events on support only.",
+        "A run is affected if it had an event on support or within the kind's window after it; "
+        "rates count events on support only.",
     )
 
 
 def ending_table(cohort: Cohort) -> Result:
-    """Rates per 1,000 support-days by kind and ending: description of endings known only afterwards, no effect of them."""
+    """Rates per 1,000 support-days by kind and ending.
+
+    A description: endings are known only afterwards, and the rates are no effect of them.
+    """
     rows, methods = [], []
     for kind, mine in cohort.complication.groupby("kind", sort=True):
         for ending in ENDINGS:
@@ -209,10 +252,13 @@ def _by_ending_layout(rows: tuple[RowOf, ...], result: Result) -> TableOf:
 
 def _cautions(audit: Audit, kinds: int) -> tuple[Caution, ...]:
     return (
-        Caution("IMM", "How support ends is known only afterwards, and longer support leaves more time for complications: "
-                       "differences between endings are no effects of the ending."),
+        Caution(
+            "IMM",
+            "How support ends is known only afterwards, and longer support leaves more time for "
+            "complications: differences between endings are no effects of the ending.",
+        ),
         Caution("MULT", f"{kinds} kinds are shown side by side; no interval is adjusted for that."),
-    )  # fmt: skip
+    )
 
 
 ANALYSES = {"complications": complications}

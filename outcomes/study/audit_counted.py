@@ -14,25 +14,38 @@ from outcomes.study.shape import counted, run_list
 
 # Variables of the completeness table: field, label. Only those that some source carries are shown.
 VARIABLES = (
-    ("person.birth_date", "age"), ("person.birth_year", "age"), ("support_run.age_years", "age"),
-    ("person.sex_recorded", "sex"), ("support_run.weight_kg", "body mass"), ("person.height_cm", "height"),
-    ("indication.group", "reason for support"), ("support_run.intended_pathway", "plan at start"),
-    ("pre_support_state.had_arrest", "arrest before support"), ("cannulation.arterial_return", "arterial return"),
-    ("cannulation.leg_cannula", "leg cannula"), ("cannulation.right_sided_monitoring", "right-sided monitoring"),
-    ("measurement.lactate", "lactate before support"), ("measurement.ph_arterial", "pH before support"),
-    ("measurement.bicarbonate", "bicarbonate before support"), ("measurement.creatinine", "creatinine before support"),
-    ("measurement.sbp", "systolic pressure before support"), ("measurement.dbp", "diastolic pressure before support"),
-    ("measurement.platelets", "platelets before support"), ("measurement.peak_inspiratory_pressure", "airway pressure before support"),
+    ("person.birth_date", "age"),
+    ("person.birth_year", "age"),
+    ("support_run.age_years", "age"),
+    ("person.sex_recorded", "sex"),
+    ("support_run.weight_kg", "body mass"),
+    ("person.height_cm", "height"),
+    ("indication.group", "reason for support"),
+    ("support_run.intended_pathway", "plan at start"),
+    ("pre_support_state.had_arrest", "arrest before support"),
+    ("cannulation.arterial_return", "arterial return"),
+    ("cannulation.leg_cannula", "leg cannula"),
+    ("cannulation.right_sided_monitoring", "right-sided monitoring"),
+    ("measurement.lactate", "lactate before support"),
+    ("measurement.ph_arterial", "pH before support"),
+    ("measurement.bicarbonate", "bicarbonate before support"),
+    ("measurement.creatinine", "creatinine before support"),
+    ("measurement.sbp", "systolic pressure before support"),
+    ("measurement.dbp", "diastolic pressure before support"),
+    ("measurement.platelets", "platelets before support"),
+    ("measurement.peak_inspiratory_pressure", "airway pressure before support"),
     ("hospital_outcome.discharge", "time of discharge or death in hospital"),
-    ("hospital_outcome.is_alive_at_discharge", "alive at discharge"), ("follow_up.contact", "last contact"),
-    ("follow_up.vital_status", "alive or dead at last contact"), ("neuro_outcome.cpc", "CPC grade"),
-)  # fmt: skip
+    ("hospital_outcome.is_alive_at_discharge", "alive at discharge"),
+    ("follow_up.contact", "last contact"),
+    ("follow_up.vital_status", "alive or dead at last contact"),
+    ("neuro_outcome.cpc", "CPC grade"),
+)
 
 OF_SURVIVORS = "CPC grade"  # asked of those who left hospital alive
 
 
 def who_is_counted(audit: Audit) -> Answer:
-    """Stages from the records read to the people whose survival is followed; each with what left it and why."""
+    """Stages from the records read to the people whose survival is followed; what left each and why."""
     cohort = audit.current
     stages = _stages(audit)
     result = counted(stages, ["group", "events", "at_risk", "why"], words=("why",))
@@ -42,7 +55,7 @@ def who_is_counted(audit: Audit) -> Answer:
         ColumnOf("reason", "Reason", "word", ("why",)),
         ColumnOf("remaining", "Remaining", "count", ("at_risk",)),
     )
-    cannot = _cannot_tell(audit)
+    special, cautions = _cannot_tell(audit)
     table = TableOf(
         "Who is counted, step by step",
         "Step",
@@ -51,26 +64,31 @@ def who_is_counted(audit: Audit) -> Answer:
         columns,
         links={("first", "remaining"): "first_runs", ("period", "remaining"): "all_runs"},
     )
-    lines = TableOf(
-        "Runs that need a word of their own", "Kind", "lines",
-        tuple(RowOf(str(r["group"]), str(r["label"]), {"group": str(r["group"])}) for r in cannot[0]),
-        (ColumnOf("runs", "Runs", "count", ("events",)), ColumnOf("treatment", "How they are treated", "word", ("why",))),
-        links={(str(r["group"]), "runs"): f"list_{r['group']}" for r in cannot[0] if r["keys"] is not None and len(r["keys"])},
-    )  # fmt: skip
-    lists = {
-        f"list_{r['group']}": run_list(str(r["label"]), r["keys"])
-        for r in cannot[0]
-        if r["keys"] is not None and len(r["keys"])
-    }
+    listed = [r for r in special if r["keys"] is not None and len(r["keys"])]
+    lists = {f"list_{r['group']}": run_list(str(r["label"]), r["keys"]) for r in listed}
     lists["all_runs"] = run_list("Runs of the period", cohort.run["run_key"])
     lists["first_runs"] = run_list("First runs", cohort.run.loc[cohort.run["is_first_run"], "run_key"])
     return Answer(
-        {"steps": result, "lines": counted(cannot[0], ["group", "events", "reason", "why"], words=("why",))},
-        {"who": table, "special": lines},
+        {"steps": result, "lines": counted(special, ["group", "events", "reason", "why"], words=("why",))},
+        {"who": table, "special": _special_layout(special, listed)},
         {"who_steps": FigureOf("steps", "Who is counted", "who")},
         facts={"any_repeat": bool((cohort.run["nth_run"].fillna(1) > 1).any())},
-        cautions=cannot[1],
+        cautions=cautions,
         lists=lists,
+    )
+
+
+def _special_layout(special: list[dict[str, Any]], listed: list[dict[str, Any]]) -> TableOf:
+    return TableOf(
+        "Runs that need a word of their own",
+        "Kind",
+        "lines",
+        tuple(RowOf(str(r["group"]), str(r["label"]), {"group": str(r["group"])}) for r in special),
+        (
+            ColumnOf("runs", "Runs", "count", ("events",)),
+            ColumnOf("treatment", "How they are treated", "word", ("why",)),
+        ),
+        links={(str(r["group"]), "runs"): f"list_{r['group']}" for r in listed},
     )
 
 
@@ -82,11 +100,28 @@ def _stages(audit: Audit) -> list[dict[str, object]]:
     named = len(audit.whole.run) + len(audit.whole.set_aside)
     return [
         {"group": "named", "label": "runs named by the sources", "events": 0, "why": "", "at_risk": named},
-        {"group": "of_period", "label": "runs that began in the period", "events": n_elsewhere, "why": "began in another year", "at_risk": n_runs + n_aside},
-        {"group": "period", "label": "runs in the store", "events": n_aside, "why": "set aside whole: key, start, end or ending could not be used", "at_risk": n_runs},
-        {"group": "first", "label": "first runs, one a person", "events": n_runs - n_first,
-         "why": "later run of the same person, or the first run is set aside or in another year", "at_risk": n_first},
-    ]  # fmt: skip
+        {
+            "group": "of_period",
+            "label": "runs that began in the period",
+            "events": n_elsewhere,
+            "why": "began in another year",
+            "at_risk": n_runs + n_aside,
+        },
+        {
+            "group": "period",
+            "label": "runs in the store",
+            "events": n_aside,
+            "why": "set aside whole: key, start, end or ending could not be used",
+            "at_risk": n_runs,
+        },
+        {
+            "group": "first",
+            "label": "first runs, one a person",
+            "events": n_runs - n_first,
+            "why": "later run of the same person, or the first run is set aside or in another year",
+            "at_risk": n_first,
+        },
+    ]
 
 
 _SPECIAL = {
@@ -109,7 +144,10 @@ _SPECIAL = {
 
 
 def _cannot_tell(audit: Audit) -> tuple[list[dict[str, Any]], tuple[Caution, ...]]:
-    """Lines for what an audit must name: later runs, open runs, transfers, attempts, people without a first run."""
+    """Lines for what an audit must name.
+
+    Later runs, open runs, transfers, attempts, people without a first run.
+    """
     run = audit.current.run
     later = run[~run["is_first_run"]]
     runs = {
@@ -147,7 +185,7 @@ def _attempts(cohort: Cohort) -> dict[str, object]:
 
 
 def completeness(audit: Audit) -> Answer:
-    """Recorded, missing, not applicable and set aside for every variable that this report uses and a source carries."""
+    """Recorded, missing, not applicable and set aside for every variable that we use and a source carries."""
     result = missing_table(audit.current)
     labels = {str(g): str(g) for g in result.table["group"]}
     rows = tuple(RowOf(f"v{i}", label, {"group": label}) for i, label in enumerate(labels.values()))
@@ -181,7 +219,10 @@ def completeness(audit: Audit) -> Answer:
 
 
 def missing_table(cohort: Cohort) -> Result:
-    """One row a variable: events (recorded), missing, not_applicable, set_aside, not_carried, lacking, applies, share."""
+    """One row a variable.
+
+    Columns: events (recorded), missing, not_applicable, set_aside, not_carried, lacking, applies, share.
+    """
     rows = []
     runs = cohort.run[["run_key", "source_key"]]
     for label in dict.fromkeys(label for _, label in VARIABLES):
@@ -223,9 +264,17 @@ def _variable(cohort: Cohort, runs: pd.DataFrame, label: str, fields: list[str])
     applies = n - apart
     lacking = missing + aside
     return {
-        "group": label, "events": n - missing - aside - apart, "missing": missing, "not_applicable": apart, "set_aside": aside,
-        "not_carried": len(runs) - n, "carried": bool(carried), "lacking": lacking, "applies": applies, "share": lacking / applies if applies else 0.0,
-    }  # fmt: skip
+        "group": label,
+        "events": n - missing - aside - apart,
+        "missing": missing,
+        "not_applicable": apart,
+        "set_aside": aside,
+        "not_carried": len(runs) - n,
+        "carried": bool(carried),
+        "lacking": lacking,
+        "applies": applies,
+        "share": lacking / applies if applies else 0.0,
+    }
 
 
 ANALYSES = {"who_is_counted": who_is_counted, "completeness": completeness}

@@ -20,8 +20,11 @@ WORDS = {"time": "Days since start of support", "value": "Share of runs", "rest"
 
 
 def ending_incidence(ending: pd.DataFrame, days: list[float], *, transfer_competes: bool = False) -> Result:
-    """Aalen–Johansen over the five endings; times in days. Still supported at the extract is censored; transfer out is
-    censored, or with transfer_competes counted as an ending of its own."""
+    """Aalen–Johansen over the five endings; times in days.
+
+    Still supported at the extract is censored; transfer out is censored, or with transfer_competes counted as
+    an ending of its own.
+    """
     causes = [*CAUSES, "transfer out"] if transfer_competes else list(CAUSES)
     cause = cause_codes(ending)
     if transfer_competes:
@@ -32,7 +35,7 @@ def ending_incidence(ending: pd.DataFrame, days: list[float], *, transfer_compet
 
 
 def endings(audit: Audit, days: list[float], end: float) -> Answer:
-    """Counts of each ending, cumulative incidence at fixed days, the whole curves, and the sensitivity to transfers."""
+    """Counts of each ending, cumulative incidence at fixed days, whole curves, sensitivity to transfers."""
     cohort = audit.current
     if cohort.ending.empty:
         raise NotEstimable("no_runs", "No run of the period was observed on support.")
@@ -85,9 +88,13 @@ def _counts(cohort: Cohort) -> tuple[Result, dict[str, RunList]]:
         known = inside["is_alive_at_discharge"].notna()
         hours = inside["support_h"].dropna().to_numpy(dtype=float)
         row: dict[str, object] = {
-            "group": name, "events": len(inside), "at_risk": len(run),
-            "alive": int(inside["is_alive_at_discharge"].fillna(False).sum()), "known": int(known.sum()), "unknown": int((~known).sum()),
-        }  # fmt: skip
+            "group": name,
+            "events": len(inside),
+            "at_risk": len(run),
+            "alive": int(inside["is_alive_at_discharge"].fillna(False).sum()),
+            "known": int(known.sum()),
+            "unknown": int((~known).sum()),
+        }
         if len(hours) and name != "still on support":
             row |= dict(
                 zip(("median", "lower", "upper"), np.quantile(hours, [0.5, 0.25, 0.75]).tolist(), strict=True)
@@ -110,8 +117,10 @@ def _fate(part: pd.DataFrame) -> dict[str, object]:
     known = part["is_alive_at_discharge"].notna()
     hours = part["support_h"].dropna().to_numpy(dtype=float)
     row: dict[str, object] = {
-        "alive": int(part["is_alive_at_discharge"].fillna(False).sum()), "known": int(known.sum()), "unknown": int((~known).sum()),
-    }  # fmt: skip
+        "alive": int(part["is_alive_at_discharge"].fillna(False).sum()),
+        "known": int(known.sum()),
+        "unknown": int((~known).sum()),
+    }
     if not len(hours):
         return row | {"reason": "not_applicable"}
     return row | dict(
@@ -120,10 +129,24 @@ def _fate(part: pd.DataFrame) -> dict[str, object]:
 
 
 def _count_table(counts: Result, lists: dict[str, RunList]) -> TableOf:
-    labels = {**ENDINGS, "transfer out": "transferred out", "still on support": "still on support",
-              "death on support": "of these: died on support", "support withdrawn": "of these: support withdrawn"}  # fmt: skip
-    order = ["recovery", "durable LVAD", "transplantation", "death or withdrawal", "death on support", "support withdrawn",
-             "other exit", "transfer out", "still on support"]  # fmt: skip
+    labels = {
+        **ENDINGS,
+        "transfer out": "transferred out",
+        "still on support": "still on support",
+        "death on support": "of these: died on support",
+        "support withdrawn": "of these: support withdrawn",
+    }
+    order = [
+        "recovery",
+        "durable LVAD",
+        "transplantation",
+        "death or withdrawal",
+        "death on support",
+        "support withdrawn",
+        "other exit",
+        "transfer out",
+        "still on support",
+    ]
     rows = rows_of({key: labels[key] for key in order})
     columns = (
         ColumnOf("runs", "Runs", "x_of_n", ("events", "at_risk")),
@@ -173,7 +196,7 @@ def _at_table(result: str, caption: str, days: list[float]) -> TableOf:
 
 
 def _risk_layout(days: list[float]) -> TableOf:
-    """How many runs were on support and observed just before each day: what the shares of that day stand on."""
+    """How many runs were on support and observed just before each day: what its shares stand on."""
     rows = tuple(RowOf(f"day_{d:g}", f"day {d:g}", {"time": d, "cause": "still supported"}) for d in days)
     columns = (
         ColumnOf("day", "Day", "time", ("time",)),
@@ -183,7 +206,7 @@ def _risk_layout(days: list[float]) -> TableOf:
 
 
 def _after_weaning(cohort: Cohort) -> Result:
-    """What became of the weaned: supported again within 48 h and 30 d, left hospital alive; each of those known."""
+    """What became of the weaned: supported again within 48 h and 30 d, left hospital alive."""
     weaned = cohort.run[cohort.run["end_kind"] == "recovery"]
     again = weaned["supported_again_after_h"]
     known = weaned["is_alive_at_discharge"].notna()

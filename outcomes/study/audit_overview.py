@@ -1,4 +1,7 @@
-"""The first page of the audit: what happened to the runs of the period, and whether the period before differs."""
+"""The first page of the audit.
+
+What happened to the runs of the period, and whether the period before differs.
+"""
 
 from __future__ import annotations
 
@@ -22,7 +25,10 @@ LINES = {
 
 
 def overview(audit: Audit) -> Answer:
-    """Counts, five lines of outcome for this period and, if one is comparable, for the period before with differences."""
+    """Counts and five lines of outcome for this period.
+
+    If the period before is comparable, the same for it, with differences.
+    """
     if audit.current.run.empty:
         raise NotEstimable("no_runs", "No run is in this period.")
     now = _outcomes(audit.current, "now")
@@ -32,34 +38,41 @@ def overview(audit: Audit) -> Answer:
     outcome["when"] = pd.array([str(row["when"]) for row, _ in [*now, *before]], dtype="string")
     size = _size(audit)
     results = {
-        "size": size, "outcome": Result(outcome, methods[0] if methods else Method("x of n")),
+        "size": size,
+        "outcome": Result(outcome, methods[0] if methods else Method("x of n")),
         "endings": _endings(audit.current),
-    }  # fmt: skip
+    }
     tables = {
-        "period": TableOf("The period in numbers", "Counted", "size", (RowOf("runs", "runs", {"group": "runs"}), RowOf("people", "people", {"group": "people"}),
-                          RowOf("days", "support-days", {"group": "days"})), _size_columns(audit)),
+        "period": _size_layout(audit),
         "outcome": _outcome_layout(audit),
-        "how_ended": TableOf("How the runs of the period ended", "Ending", "endings",
-                             tuple(RowOf(k, label, {"group": k}) for k, label in _ENDS.items()),
-                             (ColumnOf("runs", "Runs", "count", ("events",)), ColumnOf("of", "Of", "count", ("at_risk",)))),
-    }  # fmt: skip
+        "how_ended": _endings_layout(),
+    }
     if before:
         results["difference"] = _differences(outcome)
     run = audit.current.run
     return Answer(
-        results, tables,
+        results,
+        tables,
         facts={
-            "compared": bool(before), "change": _change(results.get("difference")), "open": bool((run["end_kind"] == "open").any()),
+            "compared": bool(before),
+            "change": _change(results.get("difference")),
+            "open": bool((run["end_kind"] == "open").any()),
         },
         lists={"summary_runs": run_list("Runs of the period", run["run_key"])},
-    )  # fmt: skip
+    )
 
 
 _COLUMNS_TIDY = [c for c in _COLUMNS if c != "when"]
 _ENDS = {
-    "weaned": "weaned", "weaned_home": "weaned, of whom left hospital alive", "durable_lvad": "durable LVAD", "transplantation": "transplantation",
-    "death_or_withdrawal": "death or withdrawal", "other_exit": "other exit", "transferred": "transferred out", "open": "still on support",
-}  # fmt: skip
+    "weaned": "weaned",
+    "weaned_home": "weaned, of whom left hospital alive",
+    "durable_lvad": "durable LVAD",
+    "transplantation": "transplantation",
+    "death_or_withdrawal": "death or withdrawal",
+    "other_exit": "other exit",
+    "transferred": "transferred out",
+    "open": "still on support",
+}
 
 
 def _endings(cohort: Cohort) -> Result:
@@ -69,11 +82,29 @@ def _endings(cohort: Cohort) -> Result:
         name: int((run["pathway"] == name).sum()) for name in (*CAUSES, "transfer out", "still on support")
     }
     home = int(weaned["is_alive_at_discharge"].fillna(False).sum())
-    values = [n_of["recovery"], home, n_of["durable LVAD"], n_of["transplantation"], n_of["death or withdrawal"], n_of["other exit"],
-              n_of["transfer out"], n_of["still on support"]]  # fmt: skip
+    values = [
+        n_of["recovery"],
+        home,
+        n_of["durable LVAD"],
+        n_of["transplantation"],
+        n_of["death or withdrawal"],
+        n_of["other exit"],
+        n_of["transfer out"],
+        n_of["still on support"],
+    ]
     sizes = [len(run), len(weaned), *[len(run)] * 6]
     rows = [{"group": k, "events": x, "at_risk": n} for k, x, n in zip(_ENDS, values, sizes, strict=True)]
     return counted(rows, ["group", "events", "at_risk"])
+
+
+def _endings_layout() -> TableOf:
+    return TableOf(
+        "How the runs of the period ended",
+        "Ending",
+        "endings",
+        tuple(RowOf(k, label, {"group": k}) for k, label in _ENDS.items()),
+        (ColumnOf("runs", "Runs", "count", ("events",)), ColumnOf("of", "Of", "count", ("at_risk",))),
+    )
 
 
 def _outcomes(cohort: Cohort, when: str) -> list[tuple[dict[str, object], Method | None]]:
@@ -127,11 +158,16 @@ def _size(audit: Audit) -> Result:
     return Result(tidy(rows, ["group", "cause", "estimate"]), COUNTED)
 
 
-def _size_columns(audit: Audit) -> tuple[ColumnOf, ...]:
+def _size_layout(audit: Audit) -> TableOf:
+    rows = (
+        RowOf("runs", "runs", {"group": "runs"}),
+        RowOf("people", "people", {"group": "people"}),
+        RowOf("days", "support-days", {"group": "days"}),
+    )
     columns = [ColumnOf("now", audit.label, "number_0", ("estimate",), {"cause": "now"})]
     if audit.before is not None:
         columns.append(ColumnOf("before", audit.label_before, "number_0", ("estimate",), {"cause": "before"}))
-    return tuple(columns)
+    return TableOf("The period in numbers", "Counted", "size", rows, tuple(columns))
 
 
 def _outcome_layout(audit: Audit) -> TableOf:

@@ -11,7 +11,11 @@ from outcomes.study.shape import counted, short_key
 
 
 def runs_listed(audit: Audit) -> Answer:
-    """Key, year, ending, time on support, discharge, number of complication events, and what to look at in the record."""
+    """One line a run.
+
+    Key, year, ending, time on support, discharge, number of complication events, and what to look at in the
+    record.
+    """
     run = audit.current.run
     if run.empty:
         raise NotEstimable("no_runs", "No run is in this period.")
@@ -25,10 +29,17 @@ def runs_listed(audit: Audit) -> Answer:
     )
     rows = []
     for record in run.sort_values(["run_year", "run_key"]).itertuples():
-        rows.append({
-            "group": short_key(record.run_key), "year": str(record.run_year), "ended": _word(record.end_kind), "home": _fate(record.is_alive_at_discharge),
-            "exposure": record.support_h, "events": int(events.get(record.run_key, 0)), "flag": _flag(record, int(aside.get(record.run_key, 0))),
-        })  # fmt: skip
+        rows.append(
+            {
+                "group": short_key(record.run_key),
+                "year": str(record.run_year),
+                "ended": _word(record.end_kind),
+                "home": _fate(record.is_alive_at_discharge),
+                "exposure": record.support_h,
+                "events": int(events.get(record.run_key, 0)),
+                "flag": _flag(record, int(aside.get(record.run_key, 0))),
+            }
+        )
     result = counted(
         rows,
         ["group", "exposure", "events", "year", "ended", "home", "flag"],

@@ -48,17 +48,36 @@ def survival(audit: Audit, days: list[float]) -> Answer:
     rows = tuple(RowOf(f"day_{d}", f"day {d}", {"time": float(d)}) for d in HORIZONS)
     died = people.loc[people["died"].astype(bool), "run_key"]
     return Answer(
-        {"at": Result(at, curve.method, {"persons": len(people)}, notes), "curve": curve, "risk": risk, "discharge": discharge},
         {
-            "survival_at": TableOf("Survival at fixed times", "Until", "at", rows, _at_columns(bool(people["is_news"].any())),
-                                   links={("day_365", "deaths"): "died"} if len(died) else {}),
+            "at": Result(at, curve.method, {"persons": len(people)}, notes),
+            "curve": curve,
+            "risk": risk,
+            "discharge": discharge,
+        },
+        {
+            "survival_at": TableOf(
+                "Survival at fixed times",
+                "Until",
+                "at",
+                rows,
+                _at_columns(bool(people["is_news"].any())),
+                links={("day_365", "deaths"): "died"} if len(died) else {},
+            ),
             "discharge": _discharge_layout(),
         },
-        {"survival_curve": FigureOf("survival", "Survival after the start of support", "survival_at", {"curve": "curve", "risk": "risk"},
-                                    {"": "all"}, {"time": "Days since start of support", "value": "Alive", "event": "Died"})},
+        {
+            "survival_curve": FigureOf(
+                "survival",
+                "Survival after the start of support",
+                "survival_at",
+                {"curve": "curve", "risk": "risk"},
+                {"": "all"},
+                {"time": "Days since start of support", "value": "Alive", "event": "Died"},
+            )
+        },
         facts={"any_news": bool(people["is_news"].any()), "any_left_out": _left_out(audit.current) > 0},
         lists={"died": run_list("Died, first runs", died)} if len(died) else {},
-    )  # fmt: skip
+    )
 
 
 def curve_of(people: pd.DataFrame, column: str = "time_h", days: list[float] | None = None) -> Result:
@@ -69,7 +88,10 @@ def curve_of(people: pd.DataFrame, column: str = "time_h", days: list[float] | N
 
 
 def horizon_table(cohort: Cohort, people: pd.DataFrame) -> tuple[pd.DataFrame, tuple[Caution, ...]]:
-    """One row a horizon, among those whom the source could have followed to it. A point past the follow-up is withheld."""
+    """One row a horizon, among those whom the source could have followed to it.
+
+    A point past the follow-up is withheld.
+    """
     rows, notes = [], []
     aside = _left_out(cohort)
     for day in HORIZONS:
@@ -101,8 +123,12 @@ def _at(could: pd.DataFrame, day: float, aside: int) -> dict[str, object]:
     if pd.notna(row["estimate"]):
         low = survival_at(curve_of(could, "time_low_h", [day]), day).table.iloc[0]["estimate"]
         n = len(could)
-        row |= {"low_news": low, "high_news": row["estimate"], "worst": row["estimate"] * n / (n + aside),
-                "best": (row["estimate"] * n + aside) / (n + aside)}  # fmt: skip
+        row |= {
+            "low_news": low,
+            "high_news": row["estimate"],
+            "worst": row["estimate"] * n / (n + aside),
+            "best": (row["estimate"] * n + aside) / (n + aside),
+        }
     return row
 
 
@@ -142,7 +168,10 @@ def _at_columns(news: bool) -> tuple[ColumnOf, ...]:
 
 
 def risk_table(people: pd.DataFrame, ticks: list[float]) -> Result:
-    """At risk, died so far and censored so far at fixed days. Without late entry the three add up to everyone."""
+    """At risk, died so far and censored so far at fixed days.
+
+    Without late entry the three add up to everyone.
+    """
     time = people["time_h"].to_numpy(dtype=float) / DAY
     entry = people["entry_h"].to_numpy(dtype=float) / DAY
     died = people["died"].to_numpy(dtype=bool)
@@ -166,7 +195,7 @@ def risk_table(people: pd.DataFrame, ticks: list[float]) -> Result:
 
 
 def discharge_table(cohort: Cohort, people: pd.DataFrame) -> Result:
-    """x of N for persons (first runs) and for runs: known, unknown and both bounds; still in hospital apart."""
+    """x of N for persons (first runs) and for runs: known, unknown, both bounds; still in hospital apart."""
     rows = []
     method = None
     for key, frame in (("people", people), ("runs", cohort.survival)):
@@ -174,8 +203,16 @@ def discharge_table(cohort: Cohort, people: pd.DataFrame) -> Result:
         inpatient = frame["is_still_inpatient"].fillna(False).astype(bool)
         x, n, total = int(alive.fillna(False).sum()), int(alive.notna().sum()), len(frame)
         unknown = total - n
-        row: dict[str, object] = {"group": key, "events": x, "at_risk": n, "total": total, "unknown": unknown, "inpatient": int(inpatient.sum()),
-                                  "worst": x / total if total else None, "best": (x + unknown) / total if total else None}  # fmt: skip
+        row: dict[str, object] = {
+            "group": key,
+            "events": x,
+            "at_risk": n,
+            "total": total,
+            "unknown": unknown,
+            "inpatient": int(inpatient.sum()),
+            "worst": x / total if total else None,
+            "best": (x + unknown) / total if total else None,
+        }
         try:
             one = proportion(x, n)
             method = one.method

@@ -29,7 +29,7 @@ _COLUMNS = [
 
 
 def years(audit: Audit) -> Answer:
-    """Runs, support-days, weaned, and left hospital alive of those known, with its interval, by year of the start."""
+    """By year of the start: runs, support-days, weaned, left hospital alive of those known, its interval."""
     run = audit.whole.run
     if run.empty:
         raise NotEstimable("no_runs", "No run is in the store.")
@@ -38,10 +38,16 @@ def years(audit: Audit) -> Answer:
         known = part["is_alive_at_discharge"].notna()
         x, n = int(part["is_alive_at_discharge"].fillna(False).sum()), int(known.sum())
         row: dict[str, object] = {
-            "group": str(year), "time": float(year), "runs": len(part), "people": int(part["person_key"].nunique()),
-            "support_days": float(part["support_h"].fillna(0).sum()) / DAY, "weaned": int((part["end_kind"] == "recovery").sum()),
-            "events": x, "at_risk": n, "unknown": len(part) - n,
-        }  # fmt: skip
+            "group": str(year),
+            "time": float(year),
+            "runs": len(part),
+            "people": int(part["person_key"].nunique()),
+            "support_days": float(part["support_h"].fillna(0).sum()) / DAY,
+            "weaned": int((part["end_kind"] == "recovery").sum()),
+            "events": x,
+            "at_risk": n,
+            "unknown": len(part) - n,
+        }
         try:
             one = proportion(x, n)
             method = one.method

@@ -1,4 +1,7 @@
-"""Analyses by the name that a section file uses: found by listing the modules of this package, not registered."""
+"""Analyses by the name that a section file uses.
+
+Found by listing the modules of this package, not registered.
+"""
 
 from __future__ import annotations
 
@@ -12,7 +15,10 @@ from outcomes.study.answer import Answer
 
 
 def analyses() -> dict[str, Callable[..., Answer]]:
-    """Name -> function of the audit data and the section's parameters; from ANALYSES of every module that has it."""
+    """Name -> function of the audit data and the section's parameters.
+
+    From ANALYSES of every module that has it.
+    """
     found: dict[str, Callable[..., Answer]] = {}
     for module in pkgutil.iter_modules(study.__path__):
         if module.name == "catalogue":

@@ -58,7 +58,10 @@ def run_list(label: str, keys: pd.Series) -> RunList:
 
 
 def short_key(key: object) -> str:
-    """The first ten characters of a random key: two runs of a thousand collide once in a million programmes."""
+    """The first ten characters of a random key.
+
+    Two runs of a thousand collide once in a million programmes.
+    """
     return str(key)[:10]
 
 
