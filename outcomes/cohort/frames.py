@@ -27,8 +27,25 @@ _NUMBER_ENDS = (
     "_hours",
     "_ml_day",
 )
-_WHOLE = ("nth_run", "run_year", "age_years", "age_low_years", "cause", "cpc", "open_days", "n", "stage_no", "episode_no",
-          "n_records", "n_events", "n_before", "n_after_end", "n_too_early", "timi_flow_after_pci", "gcs_total")  # fmt: skip
+_WHOLE = (
+    "nth_run",
+    "run_year",
+    "age_years",
+    "age_low_years",
+    "cause",
+    "cpc",
+    "open_days",
+    "n",
+    "stage_no",
+    "episode_no",
+    "n_records",
+    "n_events",
+    "n_before",
+    "n_after_end",
+    "n_too_early",
+    "timi_flow_after_pci",
+    "gcs_total",
+)
 _NUMBERS = (
     "lactate_mmol_l_admission",
     "lactate_mmol_l_pre_last",
@@ -40,8 +57,22 @@ _NUMBERS = (
     "value",
     "egfr_ml_min_1_73m2",
 )
-_FLAGS = ("died", "had_arrest", "was_ventilated", "transferred_in", "leg_cannula", "right_sided_monitoring", "prior_stroke",
-          "prior_cardiac_surgery", "prior_mi_or_cabg", "aortic_arch_surgery", "preoperative_stroke_or_unconscious", "rhythm_shockable_at_arrival", "plan_is_from_start", "age_topcoded")  # fmt: skip
+_FLAGS = (
+    "died",
+    "had_arrest",
+    "was_ventilated",
+    "transferred_in",
+    "leg_cannula",
+    "right_sided_monitoring",
+    "prior_stroke",
+    "prior_cardiac_surgery",
+    "prior_mi_or_cabg",
+    "aortic_arch_surgery",
+    "preoperative_stroke_or_unconscious",
+    "rhythm_shockable_at_arrival",
+    "plan_is_from_start",
+    "age_topcoded",
+)
 
 
 # A column of mart.score_input for one window: the name of the quantity and then the window.
@@ -76,10 +107,11 @@ def check_frame(frame: pd.DataFrame, key: tuple[str, ...]) -> pd.DataFrame:
 class Cohort:
     """Frames of one store, each at the grain of its mart, and what is needed to say where they came from.
 
-    run, ending, survival, score_input: one row a run. complication: run x kind. state: run x stay. flow: source x stage.
-    missing: run x field. score_window: run x quantity x window that a score asks for, where the value is of another
-    time. carried: (source, field) that a source has at all. batches: one row an import. findings: one row a finding of
-    the ledger. kinds: complication vocabulary with definition and gaps.
+    run, ending, survival, score_input: one row a run. complication: run x kind. state: run x stay. flow:
+    source x stage. missing: run x field. score_window: run x quantity x window that a score asks for, where
+    the value is of another time. carried: (source, field) that a source has at all. batches: one row an
+    import. findings: one row a finding of the ledger. kinds: complication vocabulary with definition and
+    gaps.
     """
 
     run: pd.DataFrame
@@ -117,14 +149,26 @@ _QUERIES: dict[str, tuple[str, tuple[str, ...]]] = {
     "missing": ("select * from record.missing_value", ("run_key", "field")),
     "set_aside": ("select * from record.set_aside_run", ("run_key",)),
     "carried": ("select * from ledger.carried", ("source_key", "field")),
-    "source": ("select source_key, plan_written, vital_status_date, no_death_means, attempts from record.source", ("source_key",)),
-    "coverage": ("select source_key, kind, events_kept, looked_until_h, definition, valid_from_year::varchar as valid_from_year from record.complication_coverage", ("source_key", "kind", "valid_from_year")),
-    "kinds": ("select kind, label, family, gap_h, window_h, from_h, at_risk, source from vocabulary.complication_kind", ("kind",)),
+    "source": (
+        "select source_key, plan_written, vital_status_date, no_death_means, attempts from record.source",
+        ("source_key",),
+    ),
+    "coverage": (
+        "select source_key, kind, events_kept, looked_until_h, definition,"
+        " valid_from_year::varchar as valid_from_year from record.complication_coverage",
+        ("source_key", "kind", "valid_from_year"),
+    ),
+    "kinds": (
+        "select kind, label, family, gap_h, window_h, from_h, at_risk, source"
+        " from vocabulary.complication_kind",
+        ("kind",),
+    ),
     "measurement": (
-        "select run_key, analyte, window_label, measurement_no::varchar as measurement_no, value from record.measurement",
+        "select run_key, analyte, window_label, measurement_no::varchar as measurement_no, value"
+        " from record.measurement",
         ("run_key", "analyte", "window_label", "measurement_no"),
     ),
-}  # fmt: skip
+}
 
 
 def load_cohort(con: duckdb.DuckDBPyConnection) -> Cohort:
@@ -136,7 +180,17 @@ def load_cohort(con: duckdb.DuckDBPyConnection) -> Cohort:
     return Cohort(**frames, batches=batches, findings=findings, fingerprint=str(row[0]) if row else "")
 
 
-_BY_RUN = ("run", "ending", "survival", "complication", "state", "score_input", "score_window", "missing", "measurement")
+_BY_RUN = (
+    "run",
+    "ending",
+    "survival",
+    "complication",
+    "state",
+    "score_input",
+    "score_window",
+    "missing",
+    "measurement",
+)
 
 
 def select_runs(cohort: Cohort, run_keys: pd.Series) -> Cohort:

@@ -24,8 +24,15 @@ def open_marts(store: Path) -> duckdb.DuckDBPyConnection:
         verify(checked)
     finally:
         checked.close()
-    con = duckdb.connect(":memory:", config={"autoinstall_known_extensions": "false", "autoload_known_extensions": "false",
-                                             "allow_community_extensions": "false", "python_enable_replacements": "false"})  # fmt: skip
+    con = duckdb.connect(
+        ":memory:",
+        config={
+            "autoinstall_known_extensions": "false",
+            "autoload_known_extensions": "false",
+            "allow_community_extensions": "false",
+            "python_enable_replacements": "false",
+        },
+    )
     try:
         con.execute("set TimeZone = 'UTC'")
         con.execute("set threads = 1")
@@ -47,7 +54,8 @@ def _views(con: duckdb.DuckDBPyConnection) -> None:
     for schema in ("record", "vocabulary", "ledger"):
         con.execute(f"create schema {schema}")
         names = con.execute(
-            "select table_name from duckdb_tables() where database_name = 'store' and schema_name = ? order by table_name",
+            "select table_name from duckdb_tables()"
+            " where database_name = 'store' and schema_name = ? order by table_name",
             [schema],
         ).fetchall()
         for (name,) in names:
@@ -55,7 +63,10 @@ def _views(con: duckdb.DuckDBPyConnection) -> None:
 
 
 def make_marts(con: duckdb.DuckDBPyConnection) -> None:
-    """Create mart.<name> from every file of sql/marts, in the order of their numbers. Needs schemas record, vocabulary."""
+    """Create mart.<name> from every file of sql/marts, in the order of their numbers.
+
+    Needs schemas record, vocabulary.
+    """
     con.execute("create schema mart")
     for stem, text in sql_files("marts"):
         con.execute(f'create table mart."{stem[3:]}" as {text}')
