@@ -1,4 +1,5 @@
-"""Score tables of a programme's own: the folder is read and every table in it is checked before anything is computed."""
+"""Score tables of a programme's own: the folder is read and every table in it is checked before anything is
+computed."""
 
 from __future__ import annotations
 
@@ -12,8 +13,8 @@ from outcomes.scores.checking import check_table
 def score_tables(folder: str | None) -> Catalogue | None:
     """Our tables with those of the folder; None without a folder.
 
-    UsageError USAGE.FOLDER, or SCORE-FILE.… for the first table with a fault or a vector that does not come out.
-    """
+    UsageError USAGE.FOLDER, or SCORE-FILE.… for the first table with a fault or a vector that does not come
+    out."""
     if folder is None:
         return None
     path = Path(folder)
@@ -29,6 +30,10 @@ def score_tables(folder: str | None) -> Catalogue | None:
         problems = check_table(tables.text(score.key)).problems if score.whose == "site" else ()
         if problems:
             first = problems[0]
-            raise UsageError(first.code, first.what, where=f"score table {score.key}, {first.where}",
-                             todo="outcomes score check --tables FOLDER lists every fault")  # fmt: skip
+            raise UsageError(
+                first.code,
+                first.what,
+                where=f"score table {score.key}, {first.where}",
+                todo="outcomes score check --tables FOLDER lists every fault",
+            )
     return tables

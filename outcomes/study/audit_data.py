@@ -1,4 +1,5 @@
-"""What an audit looks at: the runs of its period, those of the period before, and how both are named in print."""
+"""What an audit looks at: the runs of its period, those of the period before, and how both are named in
+print."""
 
 from __future__ import annotations
 
@@ -15,9 +16,10 @@ UNKNOWN = "not recorded"
 
 @dataclass(frozen=True)
 class Audit:
-    """current, before: cohorts of the two periods (before is None without a comparable one). label, label_before: years
-    in print. whole: everything in the store from the chosen sources, for the course over the years. score_checks:
-    declarations SCORE=DATE,ROLE. tables: score tables with the programme's own in place of or beside the shipped ones."""
+    """current, before: cohorts of the two periods (before is None without a comparable one). label,
+    label_before: years in print. whole: everything in the store from the chosen sources, for the course over
+    the years. score_checks: declarations SCORE=DATE,ROLE. tables: score tables with the programme's own in
+    place of or beside the shipped ones."""
 
     current: Cohort
     before: Cohort | None
@@ -40,8 +42,8 @@ def make_audit(
     score_checks: tuple[str, ...] = (),
     tables: Catalogue | None = None,
 ) -> Audit:
-    """Select sources and period. The period before has the same number of years and counts only if every source covers
-    all of it; otherwise there is no comparison.
+    """Select sources and period. The period before has the same number of years and counts only if every
+    source covers all of it; otherwise there is no comparison.
 
     Raises UsageError for a source that is not in the store or a period without a run.
     """
@@ -54,14 +56,26 @@ def make_audit(
     first, last = years or (int(covered["from"].min()), int(covered["to"].max()))
     current = _of_years(whole, first, last)
     if current.run.empty:
-        raise UsageError("AUDIT.EMPTY", "no run of the chosen sources began in this period", todo="outcomes summary shows the years")
+        raise UsageError(
+            "AUDIT.EMPTY",
+            "no run of the chosen sources began in this period",
+            todo="outcomes summary shows the years",
+        )
     length = last - first + 1
     before_first, before_last = first - length, first - 1
     comparable = bool((covered["from"] <= before_first).all() and (covered["to"] >= last).all())
     before = _of_years(whole, before_first, before_last) if comparable else None
     if before is not None and before.run.empty:
         before = None
-    return Audit(current, before, whole, years_label(first, last), years_label(before_first, before_last), score_checks, tables)
+    return Audit(
+        current,
+        before,
+        whole,
+        years_label(first, last),
+        years_label(before_first, before_last),
+        score_checks,
+        tables,
+    )
 
 
 def _of_sources(cohort: Cohort, sources: tuple[str, ...]) -> Cohort:

@@ -1,5 +1,5 @@
-"""Published pre-support scores: section 6 of the audit. In how many runs each could be computed, for whom it was made,
-what is missing, and observed beside expected where the table may be used for that."""
+"""Published pre-support scores: section 6 of the audit. In how many runs each could be computed, for whom
+it was made, what is missing, and observed beside expected where the table may be used for that."""
 
 from __future__ import annotations
 
@@ -24,14 +24,27 @@ from outcomes.study.shape import counted, slug
 
 WHOSE = {"ours": "shipped", "site": "the programme's own"}
 _COUNTS = [
-    "group", "runs", "eligible", "not_eligible", "not_judged", "asked", "complete", "bounded", "not_computable",
-    "class_known", "lower_quartile", "median", "upper_quartile", "reason",
-]  # fmt: skip
+    "group",
+    "runs",
+    "eligible",
+    "not_eligible",
+    "not_judged",
+    "asked",
+    "complete",
+    "bounded",
+    "not_computable",
+    "class_known",
+    "lower_quartile",
+    "median",
+    "upper_quartile",
+    "reason",
+]
 
 
 @dataclass(frozen=True)
 class Computed:
-    """A score with its answer for every run of the period. nothing_known: the answer of a run without any value."""
+    """A score with its answer for every run of the period. nothing_known: the answer of a run without any
+    value."""
 
     score: Score
     answer: pd.DataFrame
@@ -53,7 +66,8 @@ class Computed:
 
 
 def score_frame(audit: Audit) -> pd.DataFrame:
-    """mart.score_input under the canonical input names; an age from a birth year becomes an interval of two years."""
+    """mart.score_input under the canonical input names; an age from a birth year becomes an interval of two
+    years."""
     frame = audit.current.score_input.set_index("run_key")
     frame["age_low"], frame["age_high"] = frame["age_low_years"], frame["age_years"]
     uncertain = frame["age_low_years"] != frame["age_years"]
@@ -62,7 +76,8 @@ def score_frame(audit: Audit) -> pd.DataFrame:
 
 
 def compute_on(score: Score, frame: pd.DataFrame) -> Computed:
-    """The score on a frame of `score_frame`; an input that the store does not know is missing in every run."""
+    """The score on a frame of `score_frame`; an input that the store does not know is missing in every
+    run."""
     whole = with_inputs(score, frame)
     empty = whole.iloc[:0].reindex([""])
     return Computed(score, compute(score, whole), compute(score, empty).iloc[0])
@@ -100,12 +115,21 @@ def published_scores(audit: Audit, keys: Sequence[str] = ()) -> Answer:
     rows = tuple(RowOf(slug(c.score.key), c.score.name, {"group": c.score.key}) for c in found)
     results = {
         "scores": counted([_count_row(c) for c in found], _COUNTS),
-        "gate": counted([_gate_row(c.score, gate[c.score.key]) for c in found], ["group", *_GATE], words=_GATE),
+        "gate": counted(
+            [_gate_row(c.score, gate[c.score.key]) for c in found], ["group", *_GATE], words=_GATE
+        ),
     }
     tables = {
-        "scores": TableOf("In how many runs each score could be computed", "Score", "scores", rows, _columns(), (_COUNT_NOTE,)),
+        "scores": TableOf(
+            "In how many runs each score could be computed",
+            "Score",
+            "scores",
+            rows,
+            _columns(),
+            (_COUNT_NOTE,),
+        ),
         "score_gate": TableOf(_GATE_CAPTION, "Score", "gate", rows, _gate_columns()),
-    }  # fmt: skip
+    }
     frame = score_frame(audit)
     for more_results, more_tables in (
         expected_parts(audit, [c for c in found if gate[c.score.key].is_usable], checks, frame),
@@ -122,8 +146,8 @@ def published_scores(audit: Audit, keys: Sequence[str] = ()) -> Answer:
 
 
 _COUNT_NOTE = (
-    "Complete, bounded and not computable: of the runs that are eligible or cannot be judged. Bounded: an input is missing "
-    "or known within limits only, so the total lies between two values."
+    "Complete, bounded and not computable: of the runs that are eligible or cannot be judged. Bounded: an "
+    "input is missing or known within limits only, so the total lies between two values."
 )
 _GATE_CAPTION = "What each score predicts, whose table was used, and whether expected numbers may be given"
 
@@ -147,11 +171,17 @@ def _count_row(found: Computed) -> dict[str, object]:
     for end in ("total_low", "total_high"):
         nothing &= (asked[end] == found.nothing_known[end]).fillna(False).astype(bool)
     row: dict[str, object] = {
-        "group": found.score.key, "runs": len(found.answer), "asked": len(asked), "reason": "not_applicable",
-        "eligible": int((eligible == "yes").sum()), "not_eligible": int((eligible == "no").sum()),
-        "not_judged": int((eligible == "unknown").sum()), "complete": int(complete.sum()),
-        "not_computable": int(nothing.sum()), "bounded": int((~complete & ~nothing).sum()),
-    }  # fmt: skip
+        "group": found.score.key,
+        "runs": len(found.answer),
+        "asked": len(asked),
+        "reason": "not_applicable",
+        "eligible": int((eligible == "yes").sum()),
+        "not_eligible": int((eligible == "no").sum()),
+        "not_judged": int((eligible == "unknown").sum()),
+        "complete": int(complete.sum()),
+        "not_computable": int(nothing.sum()),
+        "bounded": int((~complete & ~nothing).sum()),
+    }
     if found.score.classes:
         row["class_known"] = int(asked["class"].notna().sum())
     totals = asked.loc[complete, "total"].astype(float)
@@ -179,14 +209,20 @@ _GATE = ("predicts", "whose", "evidence", "allowed", "why")
 
 
 def _gate_row(score: Score, usable: Usable) -> dict[str, object]:
-    told = score.horizon in score.outcome or (score.horizon == "hospital discharge" and "hospital" in score.outcome)
+    told = score.horizon in score.outcome or (
+        score.horizon == "hospital discharge" and "hospital" in score.outcome
+    )
     predicts = score.outcome if told else f"{score.outcome}; horizon {score.horizon}"
     given = usable.is_usable and bool(horizon_of(score))
     why = usable.reason if given or not usable.is_usable else f"outcome not in the store; {usable.reason}"
     return {
-        "group": score.key, "predicts": predicts if score.outcome else "nothing, it describes", "whose": WHOSE[score.whose],
-        "evidence": weakest(score), "allowed": "given" if given else "not given", "why": why,
-    }  # fmt: skip
+        "group": score.key,
+        "predicts": predicts if score.outcome else "nothing, it describes",
+        "whose": WHOSE[score.whose],
+        "evidence": weakest(score),
+        "allowed": "given" if given else "not given",
+        "why": why,
+    }
 
 
 def _gate_columns() -> tuple[ColumnOf, ...]:

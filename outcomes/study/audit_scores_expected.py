@@ -1,5 +1,6 @@
-"""Observed beside expected for published scores whose table may be used for it. Each outcome and horizon has its own tables:
-events of different kinds never stand in one column. Every open choice of a table gives its own line, and a range."""
+"""Observed beside expected for published scores whose table may be used for it. Each outcome and horizon
+has its own tables: events of different kinds never stand in one column. Every open choice of a table gives
+its own line, and a range."""
 
 from __future__ import annotations
 
@@ -29,9 +30,21 @@ _HORIZON = re.compile(r"(\d+) (day|month|year)s?")
 _CHECK = re.compile(r"([^=]+)=([0-9]{4}-[0-9]{2}-[0-9]{2}),(.{1,60})")
 CERTAIN = 100
 _FIELDS = [
-    "group", "at_risk", "published", "expected", "events", "estimate", "lower", "upper", "lowest", "highest", "outside",
-    "outside_events", "outside_known", "reason",
-]  # fmt: skip
+    "group",
+    "at_risk",
+    "published",
+    "expected",
+    "events",
+    "estimate",
+    "lower",
+    "upper",
+    "lowest",
+    "highest",
+    "outside",
+    "outside_events",
+    "outside_known",
+    "reason",
+]
 
 
 @dataclass(frozen=True)
@@ -52,7 +65,8 @@ class _Lines:
 
 
 def declared_checks(entries: Sequence[str], tables: Catalogue) -> list[DeclaredCheck]:
-    """SCORE=DATE,ROLE as declarations of the gate. UsageError: another form, or a score or date that does not exist."""
+    """SCORE=DATE,ROLE as declarations of the gate. UsageError: another form, or a score or date that does
+    not exist."""
     found = []
     for entry in entries:
         parts = _CHECK.fullmatch(entry)
@@ -68,7 +82,8 @@ def declared_checks(entries: Sequence[str], tables: Catalogue) -> list[DeclaredC
 
 
 def horizon_of(score: Score) -> str:
-    """'discharge', 'day_30', 'day_90', 'day_180' or 'day_365', where the store can know the score's own outcome; else ''.
+    """'discharge', 'day_30', 'day_90', 'day_180' or 'day_365', where the store can know the score's own
+    outcome; else ''.
 
     >>> from outcomes.scores.catalogue import find_score
     >>> horizon_of(find_score("save")), horizon_of(find_score("encourage")), horizon_of(find_score("tips65"))
@@ -87,7 +102,8 @@ def horizon_of(score: Score) -> str:
 
 
 def events(audit: Audit, score: Score) -> pd.Series:
-    """Whether the score's own event happened, by run; NA where it is not known or could not have been observed."""
+    """Whether the score's own event happened, by run; NA where it is not known or could not have been
+    observed."""
     horizon, runs = horizon_of(score), audit.current.survival.set_index("run_key")
     at_discharge = horizon == "discharge"
     alive = _alive_at_discharge(runs) if at_discharge else _alive_at(runs, int(horizon.removeprefix("day_")))
@@ -101,7 +117,8 @@ def _alive_at_discharge(runs: pd.DataFrame) -> pd.Series:
 
 
 def _alive_at(runs: pd.DataFrame, day: int) -> pd.Series:
-    """Only runs that the source could have followed so far: early deaths of later runs would come without their survivors."""
+    """Only runs that the source could have followed so far: early deaths of later runs would come without
+    their survivors."""
     hours = day * DAY
     died = runs["died"].fillna(False).astype(bool) & (runs["time_high_h"] <= hours).fillna(False).astype(bool)
     lived = (runs["time_low_h"] >= hours).fillna(False).astype(bool) & ~died
@@ -112,7 +129,8 @@ def _alive_at(runs: pd.DataFrame, day: int) -> pd.Series:
 def expected_parts(
     audit: Audit, found: Sequence[HasAnswer], checks: Sequence[DeclaredCheck], frame: pd.DataFrame
 ) -> Part:
-    """Two tables an outcome and horizon, for scores that passed the gate (found) and whose outcome the store holds.
+    """Two tables an outcome and horizon, for scores that passed the gate (found) and whose outcome the
+    store holds.
 
     A score with no eligible, complete run of known outcome has a line without a ratio.
     """
@@ -128,7 +146,13 @@ def expected_parts(
         whole, parts = [s.total for s in scores], [line for s in scores for line in s.parts]
         for name, lines, caption, columns, note in (
             (f"expected_{key}", whole, f"Observed and expected: {words}", _total_columns(event), _TOTAL_NOTE),
-            (f"expected_parts_{key}", parts, f"By class and by choice: {words}", _part_columns(event), _PART_NOTE),
+            (
+                f"expected_parts_{key}",
+                parts,
+                f"By class and by choice: {words}",
+                _part_columns(event),
+                _PART_NOTE,
+            ),
         ):
             if lines:
                 results[name] = _result(name, lines, method)
@@ -150,8 +174,9 @@ def _words(horizon: str, event: str) -> str:
 
 
 _TOTAL_NOTE = (
-    "Inside: eligible runs with a complete total whose outcome is known and could have been observed. The range is over the "
-    "choices that the score's source leaves open, one at a time; choices under which no run is left are not in it."
+    "Inside: eligible runs with a complete total whose outcome is known and could have been observed. The range "
+    "is over the choices that the score's source leaves open, one at a time; choices under which no run is left "
+    "are not in it."
 )
 _PART_NOTE = "A choice may leave other runs complete, so its runs need not be those of the score's own line."
 
@@ -171,7 +196,11 @@ def _score_lines(
         total |= {"lowest": min(ratios), "highest": max(ratios)}
     inside = one.answer["predicted"].notna() & happened.notna()
     known = happened[~inside & happened.notna()].astype(bool)
-    total |= {"outside": int((~inside).sum()), "outside_events": int(known.sum()), "outside_known": len(known)}
+    total |= {
+        "outside": int((~inside).sum()),
+        "outside_events": int(known.sum()),
+        "outside_known": len(known),
+    }
     return _Lines(_Line(one.score.name, total), [*_class_lines(one, happened), *choices], method)
 
 
@@ -179,7 +208,12 @@ def _ratio(answer: pd.DataFrame, happened: pd.Series) -> tuple[dict[str, object]
     inside = answer["predicted"].notna() & happened.notna()
     expected = float(answer.loc[inside, "predicted"].astype(float).sort_values().sum())
     observed, n = int(happened[inside].astype(bool).sum()), int(inside.sum())
-    row: dict[str, object] = {"at_risk": n, "expected": expected, "events": observed, "reason": "not_applicable"}
+    row: dict[str, object] = {
+        "at_risk": n,
+        "expected": expected,
+        "events": observed,
+        "reason": "not_applicable",
+    }
     try:
         ratio = standardised_ratio(observed, expected)
     except NotEstimable:

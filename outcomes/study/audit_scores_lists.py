@@ -1,5 +1,5 @@
-"""What stands beside the counts of published scores: why runs are not eligible, classes, organ failure by two sources,
-and how the scores did elsewhere."""
+"""What stands beside the counts of published scores: why runs are not eligible, classes, organ failure by
+two sources, and how the scores did elsewhere."""
 
 from __future__ import annotations
 
@@ -48,16 +48,24 @@ def reasons_part(found: Sequence[HasAnswer]) -> Part:
             rows.append({"label": label, "events": int(counts[text]), "at_risk": len(one.answer)})
     column = ColumnOf("runs", "Runs", "x_of_n", ("events", "at_risk"))
     caption = "Why runs are not eligible or cannot be judged"
-    return _layout("reasons", caption, "Score and reason", rows, (column,), notes=("The first rule that fails is counted.",))
+    return _layout(
+        "reasons",
+        caption,
+        "Score and reason",
+        rows,
+        (column,),
+        notes=("The first rule that fails is counted.",),
+    )
 
 
 def _plain(reason: str) -> str:
     text = reason.removeprefix("outside the population: ").removesuffix(" does not hold")
-    return f"not: {text}" if text != reason else text.replace("_", " ")
+    return f"rule not met: {text}" if text != reason else text.replace("_", " ")
 
 
 def classes_part(found: Sequence[HasAnswer]) -> Part:
-    """Classes of the runs that are eligible and complete. No outcome stands here: it differs between scores."""
+    """Classes of the runs that are eligible and complete. No outcome stands here: it differs between
+    scores."""
     rows: list[Row] = []
     for one in found:
         whole = one.answer[(one.answer["eligible"].astype("string") == "yes") & one.answer["total"].notna()]
@@ -74,7 +82,8 @@ def class_label(score: Score, key: str, total: str) -> str:
 
 
 def organ_part(found: Sequence[HasAnswer], frame: pd.DataFrame) -> Part:
-    """Organ failure as recorded by the centre beside the laboratory definition, for scores whose table has both."""
+    """Organ failure as recorded by the centre beside the laboratory definition, for scores whose table has
+    both."""
     rows = [row for one in found for row in _organ_rows(one.score, frame)]
     columns = (
         ColumnOf("known", "Both sources can say", "x_of_n", ("known", "runs")),
@@ -141,8 +150,8 @@ def published_part(found: Sequence[HasAnswer]) -> Part:
     )
     words, caption = ("where", "remark", "evidence"), "How the scores did where they were made and elsewhere"
     note = (
-        "Areas under the curve belong to different outcomes and people: they do not rank the scores. [x] here: not printed "
-        "or not read."
+        "Areas under the curve belong to different outcomes and people: they do not rank the scores. [x] here: "
+        "not printed or not read."
     )
     return _layout("published", caption, "Score", rows, columns, words, (note,))
 
@@ -154,13 +163,26 @@ def _published_rows(score: Score) -> list[Row]:
         events = f"{made['event']} {made['n_events']:,.0f}" if made["n_events"] else made["event"]
         where = ", ".join(filter(None, (made["text"], made["years"])))
         rows.append(
-            {"label": f"{score.name}: made from", "people": made["n"], "where": where, "remark": events or "–",
-             "evidence": made["evidence"], "reason": "not_applicable"}
-        )  # fmt: skip
+            {
+                "label": f"{score.name}: made from",
+                "people": made["n"],
+                "where": where,
+                "remark": events or "–",
+                "evidence": made["evidence"],
+                "reason": "not_applicable",
+            }
+        )
     for line in score.sheet["performance"]:
         rows.append(
-            {"label": score.name, "people": line["n"], "auroc": line["auroc"], "lower": line["auroc_low"],
-             "upper": line["auroc_high"], "where": line["cohort"], "remark": line["remark"] or "–",
-             "evidence": line["evidence"]}
-        )  # fmt: skip
+            {
+                "label": score.name,
+                "people": line["n"],
+                "auroc": line["auroc"],
+                "lower": line["auroc_low"],
+                "upper": line["auroc_high"],
+                "where": line["cohort"],
+                "remark": line["remark"] or "–",
+                "evidence": line["evidence"],
+            }
+        )
     return rows

@@ -1,4 +1,5 @@
-"""Which inputs the published scores lack most, and which values come from another time than the score asks for."""
+"""Which inputs the published scores lack most, and which values come from another time than the score asks
+for."""
 
 from __future__ import annotations
 
@@ -107,18 +108,23 @@ class _Lack:
 
 
 def lacking_part(found: Sequence[HasAnswer]) -> Part:
-    """One row an input: in how many runs it leaves a total or the eligibility open, and how often it alone does so."""
+    """One row an input: in how many runs it leaves a total or the eligibility open, and how often it alone
+    does so."""
     lacks: dict[str, _Lack] = defaultdict(_Lack)
     for one in found:
         _add(lacks, one)
     rows: list[dict[str, object]] = [
         {
-            "group": label, "events": len(x.total), "rule": len(x.rule), "at_risk": len(x.asked), "alone": x.alone,
+            "group": label,
+            "events": len(x.total),
+            "rule": len(x.rule),
+            "at_risk": len(x.asked),
+            "alone": x.alone,
             "scores": ", ".join(sorted(x.scores)),
         }
         for label, x in sorted(lacks.items(), key=lambda pair: (*_rank(pair[1]), pair[0]))
         if x.total or x.rule
-    ]  # fmt: skip
+    ]
     return _lacking_layout(rows) if rows else ({}, {})
 
 
@@ -147,30 +153,44 @@ def _add(lacks: dict[str, _Lack], one: HasAnswer) -> None:
 
 def _lacking_layout(rows: list[dict[str, object]]) -> Part:
     columns = (
-        ColumnOf("runs", "Leaves a total open, of runs eligible or not judged", "x_of_n", ("events", "at_risk")),
+        ColumnOf(
+            "runs", "Leaves a total open, of runs eligible or not judged", "x_of_n", ("events", "at_risk")
+        ),
         ColumnOf("alone", "Totals that it alone keeps open", "count", ("alone",)),
         ColumnOf("rule", "Runs in which eligibility cannot be judged for it", "count", ("rule",)),
         ColumnOf("scores", "Scores that ask for it", "word", ("scores",)),
     )
     more = len(rows) - SHOWN
-    notes = (f"The {SHOWN} inputs missing in most runs; {more} more are missing somewhere.",) if more > 0 else ()
-    shown = tuple(RowOf(f"i{n}", str(r["group"]), {"group": str(r["group"])}) for n, r in enumerate(rows[:SHOWN]))
+    notes = (
+        (f"The {SHOWN} inputs missing in most runs; {more} more are missing somewhere.",) if more > 0 else ()
+    )
+    shown = tuple(
+        RowOf(f"i{n}", str(r["group"]), {"group": str(r["group"])}) for n, r in enumerate(rows[:SHOWN])
+    )
     result = counted(rows, ["group", "events", "rule", "at_risk", "alone", "scores"], words=("scores",))
     caption = "What to record next year: inputs missing most"
     return {"lacking": result}, {"score_lacking": TableOf(caption, "Input", "lacking", shown, columns, notes)}
 
 
 def windows_part(other: pd.DataFrame, inputs: pd.DataFrame) -> Part:
-    """Values of another time than a score asks for. other: (run, quantity, window asked for, fit), fit undated or other."""
+    """Values of another time than a score asks for. other: (run, quantity, window asked for, fit), fit
+    undated or other."""
     if other.empty:
         return {}, {}
     rows: list[dict[str, object]] = []
     for (asked, quantity), part in other.groupby(["asked", "quantity"], sort=True):
         label = f"{words_of(str(quantity))}, {WINDOW_WORDS[str(asked)]}"
         fit = part["fit"].value_counts()
-        rows.append({"group": label, "runs": len(inputs), **{k: int(fit.get(k, 0)) for k in ("undated", "other")}})
+        rows.append(
+            {"group": label, "runs": len(inputs), **{k: int(fit.get(k, 0)) for k in ("undated", "other")}}
+        )
     columns = (
-        ColumnOf("undated", "Runs with a value before support whose time is not recorded", "x_of_n", ("undated", "runs")),
+        ColumnOf(
+            "undated",
+            "Runs with a value before support whose time is not recorded",
+            "x_of_n",
+            ("undated", "runs"),
+        ),
         ColumnOf("other", "Runs with a value of another time before support", "count", ("other",)),
     )
     shown = tuple(RowOf(f"w{n}", str(r["group"]), {"group": str(r["group"])}) for n, r in enumerate(rows))
