@@ -1,7 +1,11 @@
-"""All score sheets as the text of one manual page, with an evidence tag beside every line."""
+"""All score sheets as the text of one manual page, with an evidence tag beside every line.
+
+The page that ships is made anew by: python -m outcomes.scores.page > reports/manual/050_scores.md
+"""
 
 from __future__ import annotations
 
+import sys
 from collections.abc import Iterable, Mapping
 from typing import Any
 
@@ -82,3 +86,7 @@ def _performance(p: Line) -> str:
         area += f" ({_number(p['auroc_low'])} to {_number(p['auroc_high'])})"
     size = "" if p["n"] is None else f", {_number(p['n'])} people"
     return f"elsewhere: {p['cohort']}{size}{area}{'; ' + p['remark'] if p['remark'] else ''} ({p['evidence']})"
+
+
+if __name__ == "__main__":
+    sys.stdout.write(manual_page())

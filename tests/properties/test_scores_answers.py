@@ -1,7 +1,5 @@
 """Answers and refusals: eligibility in three values, missing apart from not applicable, nothing on doubt."""
 
-from time import perf_counter
-
 import numpy as np
 import pandas as pd
 import pytest
@@ -192,30 +190,6 @@ def test_every_sensible_column_type_gives_the_same_answer(make):
         "pyarrow": {"ph": "double[pyarrow]", "age_years": "int64[pyarrow]", flags[0]: "bool[pyarrow]"},
     }[make]
     pd.testing.assert_frame_equal(compute("tips65", frame.astype(change)), expected)
-
-
-def fastest(call, times=3):
-    spent = []
-    for _ in range(times):
-        start = perf_counter()
-        call()
-        spent.append(perf_counter() - start)
-    return min(spent)
-
-
-def test_the_work_is_done_on_whole_columns():
-    """The largest score costs about ten times a pandas expression over the same columns; row-wise work would
-    cost thousands. The limit of 20 leaves room for a busy machine."""
-    n = 400_000
-    draw = np.random.default_rng(2)
-    score = our_catalogue().score("save")
-    frame = pd.DataFrame([dict(v.inputs) for v in score.vectors]).iloc[draw.integers(0, 21, n)]
-    frame = frame.reset_index(drop=True).assign(nth_run=1, is_extracorporeal_cpr=False)
-
-    def expression():
-        return sum((frame[name] > frame[name].iloc[0]) * 3 for name in frame.columns) - 6
-
-    assert fastest(lambda: compute("save", frame)) < 20 * fastest(expression)
 
 
 @pytest.mark.parametrize(("age", "points"), [(64.99, 1), (65.0, 0)])
